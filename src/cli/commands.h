@@ -1,0 +1,15 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later
+ * The commands: one table for dispatch, for help and for the tests. A line each: name, what it
+ * does. */
+#ifndef CE_CLI_COMMANDS_H
+#define CE_CLI_COMMANDS_H
+
+#define CLI_COMMANDS(X)                                                                            \
+    X(inspect, "what the reader found in each run file")                                           \
+    X(tg, "the glass transition of each run, every construction")
+
+#define X(name, summary) int cmd_##name(int argc, char **argv);
+CLI_COMMANDS(X)
+#undef X
+
+#endif
