@@ -45,8 +45,8 @@ static ce_status positive(double *to, const char *value, ce_dimension dimension,
                           const char *assumed, ce_error *err)
 {
     double x;
-    ce_status st =
-        ce_parse_value(value, '.', dimension, ce_unit_find(assumed, strlen(assumed)), &x, NULL, err);
+    ce_status st = ce_parse_value(value, '.', dimension, ce_unit_find(assumed, strlen(assumed)), &x,
+                                  NULL, err);
     if (st != CE_OK) return st;
     if (!(x > 0.0)) return ce_fail(err, CE_E_DOMAIN, "'%.40s' is not above zero", value);
     *to = x;

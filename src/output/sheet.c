@@ -102,8 +102,8 @@ static void put_cell(FILE *to, const measure *m, ce_align align, const char *s, 
     if (!last) put_blanks(to, m->width - n - before);
 }
 
-static void put_heading(const ce_sheet *table, const measure *m, FILE *to, int indent,
-                        bool units, bool colour)
+static void put_heading(const ce_sheet *table, const measure *m, FILE *to, int indent, bool units,
+                        bool colour)
 {
     put_blanks(to, (size_t)indent);
     if (colour) (void)fputs(units ? "\033[2m" : "\033[1m", to);

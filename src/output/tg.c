@@ -69,10 +69,10 @@ static ce_status put_many(const ce_tg_result *result, FILE *to, bool colour)
 {
     enum { N = 6 + CE_CONSTRUCTIONS };
     ce_sheet_column column[N] = {{"run", "", CE_LEFT},
-                           {"segment", "", CE_LEFT},
-                           {"rate", "K/min", CE_RIGHT},
-                           {"Tg", "°C", CE_POINT},
-                           {"u", "K", CE_POINT}};
+                                 {"segment", "", CE_LEFT},
+                                 {"rate", "K/min", CE_RIGHT},
+                                 {"Tg", "°C", CE_POINT},
+                                 {"u", "K", CE_POINT}};
     size_t n = 5;
     for (size_t c = 0; c < CE_CONSTRUCTIONS; c++)
         if (order[c] != result->take)

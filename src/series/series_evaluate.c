@@ -25,8 +25,8 @@ static ce_status leave_out(const ce_series *series, ce_series_row *row, ce_messa
     row->reason = n < 0 ? NULL : reason;
     if (row->reason == NULL) return CE_E_NOMEM;
     ce_severity severity = row->role == CE_LEFT_OUT ? CE_NOTE : CE_ERROR; /* nobody counted on it */
-    return ce_messages_say(messages, severity, series->path, row->line, 0, "sample '%.60s' left out: %s",
-                           row->sample, row->reason);
+    return ce_messages_say(messages, severity, series->path, row->line, 0,
+                           "sample '%.60s' left out: %s", row->sample, row->reason);
 }
 
 static ce_run_options reading_of(const ce_series_row *row, const ce_run_options *reading)
@@ -78,8 +78,8 @@ static ce_status check_agreement(ce_series *series, ce_series_row *row, const ce
     double rate = fabs(s->rate_K_min);
     if (isnan(series->rate_K_min)) series->rate_K_min = rate; /* the first run sets it */
     if (fabs(rate / series->rate_K_min - 1.0) > RATE_TOLERANCE)
-        return leave_out(series, row, messages,
-                         "measured at %.3g K/min, the series at %.3g K/min", rate, series->rate_K_min);
+        return leave_out(series, row, messages, "measured at %.3g K/min, the series at %.3g K/min",
+                         rate, series->rate_K_min);
     if (series->history == CE_HISTORY_ERASED && s->kind == CE_HEATING && s->nth_of_kind == 1 &&
         heatings_in(e->run) > 1)
         return leave_out(series, row, messages,

@@ -53,10 +53,11 @@ static ce_status set_construction(ce_series *s, const char *value, ce_error *err
 {
     ce_construction c = ce_construction_find(value);
     if (c == CE_CONSTRUCTIONS)
-        return ce_fail(err, CE_E_SYNTAX,
-                       "construction '%.40s' is none of half_step, midpoint, onset, inflection, end, "
-                       "fictive",
-                       value);
+        return ce_fail(
+            err, CE_E_SYNTAX,
+            "construction '%.40s' is none of half_step, midpoint, onset, inflection, end, "
+            "fictive",
+            value);
     s->construction = c;
     s->construction_stated = true;
     return CE_OK;
@@ -79,14 +80,16 @@ static ce_status set_history(ce_series *s, const char *value, ce_error *err)
     else if (strcasecmp(value, "as received") == 0)
         s->history = CE_HISTORY_AS_RECEIVED;
     else
-        return ce_fail(err, CE_E_SYNTAX, "history '%.40s' is neither 'erased' nor 'as received'", value);
+        return ce_fail(err, CE_E_SYNTAX, "history '%.40s' is neither 'erased' nor 'as received'",
+                       value);
     return CE_OK;
 }
 
 static ce_status set_segment(ce_series *s, const char *value, ce_error *err)
 {
     double x;
-    if (!ce_parse_number(value, strlen(value), '.', &x) || !(x >= 1.0 && x <= 1000.0) || x != floor(x))
+    if (!ce_parse_number(value, strlen(value), '.', &x) || !(x >= 1.0 && x <= 1000.0) ||
+        x != floor(x))
         return ce_fail(err, CE_E_SYNTAX, "segment '%.40s' is not a whole number from 1 on", value);
     s->segment = (size_t)x;
     return CE_OK;
@@ -94,7 +97,8 @@ static ce_status set_segment(ce_series *s, const char *value, ce_error *err)
 
 static ce_status set_common_u(ce_series *s, const char *value, ce_error *err)
 {
-    ce_status st = ce_parse_value(value, '.', CE_DIM_FRACTION, NULL, &s->mn_common_u_rel, NULL, err);
+    ce_status st =
+        ce_parse_value(value, '.', CE_DIM_FRACTION, NULL, &s->mn_common_u_rel, NULL, err);
     if (st == CE_OK && !(s->mn_common_u_rel >= 0.0 && s->mn_common_u_rel < 1.0)) {
         s->mn_common_u_rel = (double)NAN;
         st = ce_fail(err, CE_E_DOMAIN, "mn_common_u '%.40s' must lie between 0 and 100 %%", value);
@@ -193,19 +197,20 @@ static bool differ(double a, double b)
 }
 
 /* Repeats of one sample must agree about what the sample is. A left-out row keeps out of it. */
-static ce_status check_sample(const ce_series *series, ce_sample *s, ce_messages *messages, bool *faulty)
+static ce_status check_sample(const ce_series *series, ce_sample *s, ce_messages *messages,
+                              bool *faulty)
 {
     const ce_series_row *first = NULL;
     for (size_t i = 0; i < s->n_rows; i++) {
         const ce_series_row *row = &series->row[s->row[i]];
         if (row->role == CE_LEFT_OUT) continue;
         if (first == NULL) first = row;
-        const char *what = row->role != first->role                          ? "role"
-                           : differ(row->mn_g_mol, first->mn_g_mol)          ? "mn"
-                           : differ(row->mn_u_g_mol, first->mn_u_g_mol)      ? "mn_u"
-                           : differ(row->mw_g_mol, first->mw_g_mol)          ? "mw or dispersity"
-                           : differ(row->chain_ends, first->chain_ends)      ? "chain_ends"
-                                                                             : NULL;
+        const char *what = row->role != first->role                     ? "role"
+                           : differ(row->mn_g_mol, first->mn_g_mol)     ? "mn"
+                           : differ(row->mn_u_g_mol, first->mn_u_g_mol) ? "mn_u"
+                           : differ(row->mw_g_mol, first->mw_g_mol)     ? "mw or dispersity"
+                           : differ(row->chain_ends, first->chain_ends) ? "chain_ends"
+                                                                        : NULL;
         if (what == NULL) continue;
         *faulty = true;
         if (ce_messages_say(messages, CE_ERROR, series->path, row->line, 0,
@@ -250,9 +255,10 @@ static ce_status check_definition(ce_series *series, ce_messages *messages, bool
     if (!bare || series->construction_stated) return CE_OK;
     if (runs) {
         *faulty = true;
-        return ce_messages_say(messages, CE_ERROR, series->path, 0, 0,
-                               "the series mixes runs with Tg values of unstated definition: add a line "
-                               "'# construction: half_step' (or another) above the table");
+        return ce_messages_say(
+            messages, CE_ERROR, series->path, 0, 0,
+            "the series mixes runs with Tg values of unstated definition: add a line "
+            "'# construction: half_step' (or another) above the table");
     }
     return ce_messages_say(messages, CE_WARNING, series->path, 0, 0,
                            "the series does not say which construction its Tg values are: "
@@ -270,10 +276,11 @@ static ce_status check_rates(ce_series *series, ce_messages *messages, bool *fau
         double want = isnan(series->rate_K_min) ? first->rate_K_min : series->rate_K_min;
         if (fabs(row->rate_K_min / want - 1.0) <= 0.05) continue;
         *faulty = true;
-        if (ce_messages_say(messages, CE_ERROR, series->path, row->line, 0,
-                            "this row was measured at %g K/min, the series at %g K/min: one series has "
-                            "one rate (leave the row out, or split the series)",
-                            row->rate_K_min, want) != CE_OK)
+        if (ce_messages_say(
+                messages, CE_ERROR, series->path, row->line, 0,
+                "this row was measured at %g K/min, the series at %g K/min: one series has "
+                "one rate (leave the row out, or split the series)",
+                row->rate_K_min, want) != CE_OK)
             return CE_E_NOMEM;
     }
     if (isnan(series->rate_K_min) && first != NULL) series->rate_K_min = first->rate_K_min;
@@ -292,8 +299,8 @@ static char *resolve(const char *series_path, const char *run)
     return n < 0 ? NULL : path;
 }
 
-static ce_status read_rows(const ce_table *table, const ce_series_columns *columns, ce_series *series,
-                           ce_messages *messages, bool *faulty, ce_error *err)
+static ce_status read_rows(const ce_table *table, const ce_series_columns *columns,
+                           ce_series *series, ce_messages *messages, bool *faulty, ce_error *err)
 {
     if (table->n_rows > CE_MAX_SERIES_ROWS)
         return ce_fail_at(err, CE_E_LIMIT, table->name, 0, 0, "a series has at most %zu rows",
@@ -309,7 +316,8 @@ static ce_status read_rows(const ce_table *table, const ce_series_columns *colum
             continue;
         }
         series->n_rows++;
-        if (row->run != NULL && (row->path = resolve(series->path, row->run)) == NULL) return CE_E_NOMEM;
+        if (row->run != NULL && (row->path = resolve(series->path, row->run)) == NULL)
+            return CE_E_NOMEM;
     }
     return CE_OK;
 }
@@ -338,9 +346,10 @@ static ce_status read_table(const ce_table *table, ce_series *series, ce_message
     if (st == CE_OK) st = ce_series_map_columns(table, &columns, messages, err);
     if (st != CE_OK) return st == CE_E_NOMEM ? ce_fail(err, st, "out of memory") : st;
     if (columns.at[COL_SAMPLE] >= table->n_columns)
-        return ce_fail_at(err, CE_E_SYNTAX, table->name, table->column[0].line, 0,
-                          "there is no column 'sample': a series file has at least the columns sample, "
-                          "mn and either run or tg");
+        return ce_fail_at(
+            err, CE_E_SYNTAX, table->name, table->column[0].line, 0,
+            "there is no column 'sample': a series file has at least the columns sample, "
+            "mn and either run or tg");
     if (columns.at[COL_RUN] >= table->n_columns && columns.at[COL_TG] >= table->n_columns)
         return ce_fail_at(err, CE_E_SYNTAX, table->name, table->column[0].line, 0,
                           "there is neither a column 'run' nor a column 'tg'");
@@ -351,7 +360,8 @@ static ce_status read_table(const ce_table *table, ce_series *series, ce_message
         return ce_fail_at(err, CE_E_DOMAIN, table->name, 0, 0,
                           "the series cannot be used until what is named above is mended");
     if (series->n_rows == 0)
-        return ce_fail_at(err, CE_E_DOMAIN, table->name, 0, 0, "no usable row is left in the series");
+        return ce_fail_at(err, CE_E_DOMAIN, table->name, 0, 0,
+                          "no usable row is left in the series");
     return CE_OK;
 }
 

@@ -87,8 +87,9 @@ ce_status ce_series_map_columns(const ce_table *table, ce_series_columns *column
         size_t twice = ce_table_find(table, rules[c].name, at + 1);
         ce_status one = check_unit(table, at, (ce_series_column)c, &columns->unit[c], &e);
         if (one == CE_OK && twice < table->n_columns)
-            one = ce_fail_at(&e, CE_E_SYNTAX, table->name, table->column[twice].line,
-                             table->column[twice].column, "column '%s' stands twice", rules[c].name);
+            one =
+                ce_fail_at(&e, CE_E_SYNTAX, table->name, table->column[twice].line,
+                           table->column[twice].column, "column '%s' stands twice", rules[c].name);
         if (one == CE_OK) continue;
         if (st == CE_OK && err != NULL)
             *err = e; /* the first; the others are told beside it */
@@ -98,9 +99,9 @@ ce_status ce_series_map_columns(const ce_table *table, ce_series_columns *column
     }
     for (size_t i = 0; i < table->n_columns; i++)
         if (!is_known(columns, i) && table->column[i].name[0] != '\0' &&
-            ce_messages_say(messages, CE_NOTE, table->name, table->column[i].line,
-                            table->column[i].column, "column '%.60s' is not one of a series: ignored",
-                            table->column[i].name) != CE_OK)
+            ce_messages_say(
+                messages, CE_NOTE, table->name, table->column[i].line, table->column[i].column,
+                "column '%.60s' is not one of a series: ignored", table->column[i].name) != CE_OK)
             return CE_E_NOMEM;
     return st;
 }
@@ -131,7 +132,8 @@ static void fault(reader *r, const ce_cell *cell, const char *fmt, ...)
     va_end(ap);
     r->faulty = true;
     size_t line = cell->line > 0 ? cell->line : ce_table_cell(r->table, r->i, 0)->line;
-    if (ce_messages_say(r->messages, CE_ERROR, r->table->name, line, cell->column, "%s", text) != CE_OK)
+    if (ce_messages_say(r->messages, CE_ERROR, r->table->name, line, cell->column, "%s", text) !=
+        CE_OK)
         r->no_memory = true;
 }
 
@@ -220,7 +222,8 @@ static void read_masses(reader *r, ce_series_row *row)
         fault(r, cell_of(r, COL_MW), "Mn is larger than Mw: are the columns exchanged?");
     double both = row->mw_g_mol / row->mn_g_mol / row->dispersity;
     if (fabs(both - 1.0) > 0.02)
-        fault(r, cell_of(r, COL_DISPERSITY), "dispersity does not agree with mw and mn (Mw/Mn = %.4g)",
+        fault(r, cell_of(r, COL_DISPERSITY),
+              "dispersity does not agree with mw and mn (Mw/Mn = %.4g)",
               row->mw_g_mol / row->mn_g_mol);
     if (isnan(row->mw_g_mol)) row->mw_g_mol = row->mn_g_mol * row->dispersity;
 }
@@ -233,14 +236,15 @@ static void read_role(reader *r, ce_series_row *row)
         ce_role role = CE_STANDARD;
         while (role <= CE_LEFT_OUT && strcasecmp(cell->text, ce_role_name(role)) != 0) role++;
         if (role > CE_LEFT_OUT)
-            fault(r, cell, "role '%.40s' is none of standard, unknown, control, left-out", cell->text);
+            fault(r, cell, "role '%.40s' is none of standard, unknown, control, left-out",
+                  cell->text);
         else
             row->role = role;
     }
     const ce_cell *mn = cell_of(r, COL_MN);
     if ((row->role == CE_STANDARD || row->role == CE_CONTROL) && mn->text[0] == '\0')
-        fault(r, mn, "%s '%.60s' has no Mn: give one, or make it an unknown", ce_role_name(row->role),
-              row->sample == NULL ? "" : row->sample);
+        fault(r, mn, "%s '%.60s' has no Mn: give one, or make it an unknown",
+              ce_role_name(row->role), row->sample == NULL ? "" : row->sample);
 }
 
 static void read_measurement(reader *r, ce_series_row *row)

@@ -11,7 +11,8 @@
  * *value is in the internal unit of the dimension and *unit (may be NULL) what it was given in.
  * CE_E_SYNTAX: err says what is wrong with text, naming no option or cell. */
 ce_status ce_parse_value(const char *text, char decimal, ce_dimension dimension,
-                         const ce_unit *assumed, double *value, const ce_unit **unit, ce_error *err);
+                         const ce_unit *assumed, double *value, const ce_unit **unit,
+                         ce_error *err);
 
 /* "A:B" with A < B, each as above; a unit behind B alone counts for A too. */
 ce_status ce_parse_range(const char *text, char decimal, ce_dimension dimension,
