@@ -70,8 +70,10 @@ typedef struct {
     ce_role role;
     size_t n_rows, *row; /* indices into the rows, owned                                    */
     size_t n_used;
-    double *tg_K, *tg_u_K; /* of the n_used used rows, owned                                  */
-    double mean_K, sd_K;   /* of the used rows; sd NaN below two                              */
+    double *tg_K;        /* of the n_used used rows, owned                                  */
+    double *tg_u_K;      /* their stated uncertainties; NaN where not stated, as for runs    */
+    double reading_u_K;  /* r.m.s. uncertainty of the readings off runs; NaN for bare Tg      */
+    double mean_K, sd_K; /* of the used rows; sd NaN below two                              */
     double mn_g_mol, mn_u_g_mol, mw_g_mol, chain_ends; /* NaN where not given; ends default 2 */
 } ce_sample;
 

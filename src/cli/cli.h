@@ -9,6 +9,8 @@
 #include <stddef.h>
 #include <stdio.h>
 
+#include "output/document.h"
+
 /* EXIT STATUS of chainend(1): part of the interface. */
 enum {
     XIT_OK = 0,    /* all that was asked for was produced                    */
@@ -55,11 +57,9 @@ bool cli_parse(const cli_command *command, const cli_option *option, size_t n_op
 
 /* ---- output ------------------------------------------------------------------------------- */
 
-typedef enum { CLI_AS_TEXT, CLI_AS_CSV, CLI_AS_JSON } cli_format;
-
 /* What nearly every command shares. */
 typedef struct {
-    cli_format format;
+    ce_format format;
     const char *output; /* NULL or "-" = standard output */
     bool quiet;
 } cli_common;
@@ -83,10 +83,9 @@ ce_status cli_set_format(void *to, const char *value, ce_error *err);
         .kind = CLI_FLAG, .to = &(c)->quiet                                                        \
     }
 
-/* Call write(what, to, format, colour) with the stream the options name, and see that all of it
- * arrives. Returns status, or XIT_FAILED with a message. */
-typedef ce_status (*cli_writer)(const void *what, FILE *to, cli_format format, bool colour);
-int cli_deliver(const cli_command *command, const cli_common *common, cli_writer write,
+/* Write what with the stream and form the options name, and see that all of it arrives. Returns
+ * status, or XIT_FAILED with a message. */
+int cli_deliver(const cli_command *command, const cli_common *common, ce_writer write,
                 const void *what, int status);
 
 /* ---- messages ----------------------------------------------------------------------------- */

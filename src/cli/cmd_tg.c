@@ -22,19 +22,6 @@ static const cli_command command = {
                "chainend tg --format json runs/*.csv > tg.json",
 };
 
-static ce_status write_result(const void *what, FILE *to, cli_format format, bool colour)
-{
-    switch (format) {
-    case CLI_AS_CSV:
-        return ce_write_tg_csv(what, to);
-    case CLI_AS_JSON:
-        return ce_write_tg_json(what, to);
-    case CLI_AS_TEXT:
-        break;
-    }
-    return ce_write_tg_text(what, to, colour);
-}
-
 int cmd_tg(int argc, char **argv)
 {
     cli_common common = {0};
@@ -70,7 +57,7 @@ int cmd_tg(int argc, char **argv)
     }
     result.run = runs;
     status = refused == 0 ? XIT_OK : refused == result.n ? XIT_FAILED : XIT_PART;
-    status = cli_deliver(&command, &common, write_result, &result, status);
+    status = cli_deliver(&command, &common, ce_write_tg, &result, status);
     for (size_t i = 0; i < result.n; i++) ce_evaluation_free(&runs[i]);
     free(runs);
     return status;

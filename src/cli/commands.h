@@ -6,7 +6,10 @@
 
 #define CLI_COMMANDS(X)                                                                            \
     X(inspect, "what the reader found in each run file")                                           \
-    X(tg, "the glass transition of each run, every construction")
+    X(tg, "the glass transition of each run, every construction")                                  \
+    X(series, "evaluate a series, show the pairs of Mn and Tg")                                    \
+    X(fit, "fit the Tg-Mn relation, with intervals and diagnostics")                               \
+    X(estimate, "Mn from Tg, Tg from Mn, with an interval")
 
 #define X(name, summary) int cmd_##name(int argc, char **argv);
 CLI_COMMANDS(X)

@@ -196,7 +196,7 @@ ce_status cli_set_format(void *to, const char *value, ce_error *err)
     static const char *const names[] = {"text", "csv", "json"};
     for (size_t i = 0; i < sizeof names / sizeof *names; i++)
         if (strcmp(value, names[i]) == 0) {
-            *(cli_format *)to = (cli_format)i;
+            *(ce_format *)to = (ce_format)i;
             return CE_OK;
         }
     return ce_fail(err, CE_E_ARG, "'%s' is none of text, csv, json", value);

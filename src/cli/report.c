@@ -63,7 +63,7 @@ bool cli_colour(FILE *to)
     return isatty(fileno(to)) == 1 && term != NULL && strcmp(term, "dumb") != 0;
 }
 
-static int deliver_to_file(const cli_command *command, const cli_common *common, cli_writer write,
+static int deliver_to_file(const cli_command *command, const cli_common *common, ce_writer write,
                            const void *what, int status)
 {
     ce_error err = CE_ERROR_INIT;
@@ -83,13 +83,13 @@ static int deliver_to_file(const cli_command *command, const cli_common *common,
     return XIT_FAILED;
 }
 
-int cli_deliver(const cli_command *command, const cli_common *common, cli_writer write,
+int cli_deliver(const cli_command *command, const cli_common *common, ce_writer write,
                 const void *what, int status)
 {
     if (common->output != NULL && strcmp(common->output, "-") != 0)
         return deliver_to_file(command, common, write, what, status);
     ce_status st =
-        write(what, stdout, common->format, common->format == CLI_AS_TEXT && cli_colour(stdout));
+        write(what, stdout, common->format, common->format == CE_AS_TEXT && cli_colour(stdout));
     if (st == CE_OK) return status; /* main() sees to it that the bytes arrived */
     fprintf(stderr, "chainend %s: %s\n", command->name, ce_status_text(st));
     return XIT_FAILED;

@@ -6,7 +6,7 @@
 #include <chainend/fit.h>
 #include <chainend/series.h>
 
-#include <stdio.h>
+#include "output/document.h"
 
 typedef struct {
     const ce_fit *fit;
@@ -17,9 +17,6 @@ typedef struct {
     double ceiling_tg_K, ceiling_mn_g_mol; /* for one run of an unknown; NaN = no reading has one */
 } ce_fit_result;
 
-/* All return CE_OK, CE_E_NOMEM or CE_E_IO. */
-ce_status ce_write_fit_text(const ce_fit_result *result, FILE *to, bool colour);
-ce_status ce_write_fit_csv(const ce_fit_result *result, FILE *to);
-ce_status ce_write_fit_json(const ce_fit_result *result, FILE *to);
+CE_DOCUMENT(fit, ce_fit_result)
 
 #endif

@@ -30,7 +30,8 @@ void ce_write_definition(ce_construction construction, double rate_K_min, ce_his
 static double uncertainty_of(const ce_series *series, const ce_sample *s)
 {
     if (!isnan(series->run_sd_K)) return series->run_sd_K / sqrt((double)s->n_used);
-    return s->n_used == 1 ? s->tg_u_K[0] : (double)NAN;
+    if (s->n_used != 1) return (double)NAN;
+    return isnan(s->tg_u_K[0]) ? s->reading_u_K : s->tg_u_K[0];
 }
 
 static void put_sample(ce_sheet *sheet, const ce_series *series, const ce_sample *s)

@@ -5,12 +5,9 @@
 
 #include <chainend/series.h>
 
-#include <stdio.h>
+#include "output/document.h"
 
-/* All return CE_OK, CE_E_NOMEM or CE_E_IO. */
-ce_status ce_write_series_text(const ce_series *series, FILE *to, bool colour);
-ce_status ce_write_series_csv(const ce_series *series, FILE *to);
-ce_status ce_write_series_json(const ce_series *series, FILE *to);
+CE_DOCUMENT(series, ce_series)
 
 /* One line: "half_step at 10 K/min, history erased". */
 void ce_write_definition(ce_construction construction, double rate_K_min, ce_history history,

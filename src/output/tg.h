@@ -5,7 +5,7 @@
 
 #include <chainend/series.h>
 
-#include <stdio.h>
+#include "output/document.h"
 
 typedef struct {
     size_t n;
@@ -13,9 +13,6 @@ typedef struct {
     ce_construction take; /* the one that counts as "the Tg" */
 } ce_tg_result;
 
-/* All return CE_OK, CE_E_NOMEM or CE_E_IO. */
-ce_status ce_write_tg_text(const ce_tg_result *result, FILE *to, bool colour);
-ce_status ce_write_tg_csv(const ce_tg_result *result, FILE *to);
-ce_status ce_write_tg_json(const ce_tg_result *result, FILE *to);
+CE_DOCUMENT(tg, ce_tg_result)
 
 #endif

@@ -148,15 +148,18 @@ static ce_status average(const ce_series *series, ce_sample *s)
     s->tg_K = calloc(s->n_rows, sizeof *s->tg_K);
     s->tg_u_K = calloc(s->n_rows, sizeof *s->tg_u_K);
     if (s->tg_K == NULL || s->tg_u_K == NULL) return CE_E_NOMEM;
-    double sum = 0.0, squares = 0.0;
+    double sum = 0.0, squares = 0.0, readings = 0.0;
     for (size_t i = 0; i < s->n_rows; i++) {
         const ce_series_row *row = &series->row[s->row[i]];
         if (!row->used) continue;
         s->tg_K[s->n_used] = row->tg_K;
-        s->tg_u_K[s->n_used++] = row->tg_u_K;
+        /* what a reading says of itself is not the scatter of repeated runs: only stated ones count */
+        s->tg_u_K[s->n_used++] = row->run == NULL ? row->tg_u_K : (double)NAN;
         sum += row->tg_K;
+        readings += row->run == NULL ? (double)NAN : row->tg_u_K * row->tg_u_K;
     }
     s->mean_K = s->n_used > 0 ? sum / (double)s->n_used : (double)NAN;
+    s->reading_u_K = s->n_used > 0 ? sqrt(readings / (double)s->n_used) : (double)NAN;
     for (size_t i = 0; i < s->n_used; i++)
         squares += (s->tg_K[i] - s->mean_K) * (s->tg_K[i] - s->mean_K);
     s->sd_K = s->n_used > 1 ? sqrt(squares / (double)(s->n_used - 1)) : (double)NAN;
