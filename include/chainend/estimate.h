@@ -177,12 +177,12 @@ CE_API ce_monte_carlo_options ce_monte_carlo_options_default(void);
 /* Mn has no mean and no variance here (1/z with a density at z = 0): only quantiles are given. */
 typedef struct {
     size_t trials;
-    bool settled;                   /* the stopping rule was met before max_trials               */
-    double median_g_mol;            /* infinite when more than half the trials have no finite Mn */
-    double low_g_mol, high_g_mol;   /* probabilistically symmetric; high NaN = open              */
-    double p_none;                  /* probability that no finite Mn explains the reading        */
-    double z_mean, z_u;             /* of 1/Mn, "no finite Mn" counted as 0, mol/g               */
-    double z_delta;                 /* numerical tolerance of z: the limits are this stable      */
+    bool settled;                 /* the stopping rule was met before max_trials               */
+    double median_g_mol;          /* infinite when more than half the trials have no finite Mn */
+    double low_g_mol, high_g_mol; /* probabilistically symmetric; high NaN = open              */
+    double p_none;                /* probability that no finite Mn explains the reading        */
+    double z_mean, z_u;           /* of 1/Mn, "no finite Mn" counted as 0, mol/g               */
+    double z_delta;               /* numerical tolerance of z: the limits are this stable      */
     double level;
 } ce_monte_carlo;
 

@@ -78,7 +78,8 @@ typedef struct {
 
 static double relative_width(const ce_estimate *e)
 {
-    return e->bound == CE_TWO_SIDED ? 0.5 * (e->high_g_mol - e->low_g_mol) / e->mn_g_mol : (double)NAN;
+    return e->bound == CE_TWO_SIDED ? 0.5 * (e->high_g_mol - e->low_g_mol) / e->mn_g_mol
+                                    : (double)NAN;
 }
 
 /* The estimate if the same mean came from four times as many runs that agree as those of the
@@ -106,21 +107,23 @@ static ce_status say_runs(const advice *a, const char *what, char *text, size_t 
     if (st != CE_OK) return st;
     double now = relative_width(a->e), then = relative_width(&more);
     if (isfinite(now) && isfinite(then))
-        (void)snprintf(text, room,
-                       "%s is %.0f %% of the variance: measure this unknown more often; %zu runs in "
-                       "all would bring the interval from +-%.0f %% to +-%.0f %%",
-                       what, 100.0 * a->share, runs, 100.0 * now, 100.0 * then);
+        (void)snprintf(
+            text, room,
+            "%s is %.0f %% of the variance: measure this unknown more often; %zu runs in "
+            "all would bring the interval from +-%.0f %% to +-%.0f %%",
+            what, 100.0 * a->share, runs, 100.0 * now, 100.0 * then);
     else if (isfinite(then))
         (void)snprintf(text, room,
                        "%s is %.0f %% of the variance: %zu runs in all, with the same mean, would "
                        "close the interval at +-%.0f %%",
                        what, 100.0 * a->share, runs, 100.0 * then);
     else
-        (void)snprintf(text, room,
-                       "%s is %.0f %% of the variance, but the reading lies so near the plateau that "
-                       "even %zu runs in all, with the same mean, would not close the interval: Tg "
-                       "cannot tell molar masses apart here",
-                       what, 100.0 * a->share, runs);
+        (void)snprintf(
+            text, room,
+            "%s is %.0f %% of the variance, but the reading lies so near the plateau that "
+            "even %zu runs in all, with the same mean, would not close the interval: Tg "
+            "cannot tell molar masses apart here",
+            what, 100.0 * a->share, runs);
     return CE_OK;
 }
 
@@ -135,21 +138,23 @@ static const char *remedy(const char *source)
         {CE_SHARE_TEMPERATURE, "measure unknown and standards on one instrument, or calibrate its "
                                "temperature scale better"},
         {CE_SHARE_RATE, "measure at the heating rate of the calibration"},
-        {CE_SHARE_CERTIFICATES, "better certificates, or further standards with certificates of "
-                                "their own near this molar mass; more runs of the present standards "
-                                "do not help"},
+        {CE_SHARE_CERTIFICATES,
+         "better certificates, or further standards with certificates of "
+         "their own near this molar mass; more runs of the present standards "
+         "do not help"},
         {CE_SHARE_STANDARDS, "further standards help; more runs of the present ones do not"},
         {CE_SHARE_FIT, "measure the standards more often, those near this molar mass first"},
-        {CE_SHARE_COMMON_MN, "it comes from how all certificates were made; neither runs nor further "
-                             "standards of the same origin help"},
+        {CE_SHARE_COMMON_MN,
+         "it comes from how all certificates were made; neither runs nor further "
+         "standards of the same origin help"},
     };
     for (size_t i = 0; i < sizeof table / sizeof *table; i++)
         if (strcmp(source, ce_share_name(table[i].source)) == 0) return table[i].remedy;
     return "";
 }
 
-ce_status ce_estimate_hint(const ce_fit *fit, const ce_unknown *unknown, const ce_estimate *estimate,
-                           char *text, size_t room)
+ce_status ce_estimate_hint(const ce_fit *fit, const ce_unknown *unknown,
+                           const ce_estimate *estimate, char *text, size_t room)
 {
     if (text == NULL || room == 0 || fit == NULL || unknown == NULL || estimate == NULL)
         return CE_E_ARG;
