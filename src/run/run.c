@@ -182,8 +182,7 @@ static ce_status check_arrays(size_t n, const double *time_s, const double *temp
 {
     if (n < 2 || temperature_K == NULL || signal == NULL)
         return ce_fail(err, CE_E_ARG, "a run needs at least two points of temperature and signal");
-    if (n > CE_MAX_POINTS)
-        return ce_fail(err, CE_E_LIMIT, "more than %zu points", CE_MAX_POINTS);
+    if (n > CE_MAX_POINTS) return ce_fail(err, CE_E_LIMIT, "more than %zu points", CE_MAX_POINTS);
     if (time_s == NULL && !(fabs(rate_K_min) > 0.0 && isfinite(rate_K_min)))
         return ce_fail(err, CE_E_ARG, "a run without time needs a rate");
     for (size_t i = 0; i < n; i++) {
@@ -199,8 +198,8 @@ static ce_status check_arrays(size_t n, const double *time_s, const double *temp
 }
 
 ce_status ce_run_from_arrays(size_t n, const double *time_s, const double *temperature_K,
-                             const double *signal, ce_signal kind, double mass_g,
-                             double rate_K_min, ce_run **run, ce_error *err)
+                             const double *signal, ce_signal kind, double mass_g, double rate_K_min,
+                             ce_run **run, ce_error *err)
 {
     *run = NULL;
     ce_status st = check_arrays(n, time_s, temperature_K, signal, rate_K_min, err);

@@ -9,7 +9,7 @@
  * NULL; rate_K_min then gives the size of the rate, NaN = not known). start: sorted first points of
  * n_starts stretches that belong to segments of their own; point 0 is implied. Lines are left 0.
  * CE_OK | CE_E_LIMIT | CE_E_NOMEM */
-ce_status ce_run_find_segments(ce_run *run, const size_t *start, size_t n_starts,
-                               double rate_K_min, ce_error *err);
+ce_status ce_run_find_segments(ce_run *run, const size_t *start, size_t n_starts, double rate_K_min,
+                               ce_error *err);
 
 #endif

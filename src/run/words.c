@@ -10,9 +10,9 @@
 static const struct {
     const char *from, *to;
 } accents[] = {
-    {"ä", "a"}, {"ö", "o"}, {"ü", "u"}, {"Ä", "a"}, {"Ö", "o"}, {"Ü", "u"}, {"ß", "ss"},
-    {"é", "e"}, {"è", "e"}, {"ê", "e"}, {"É", "e"}, {"È", "e"}, {"à", "a"}, {"á", "a"},
-    {"â", "a"}, {"Á", "a"}, {"í", "i"}, {"î", "i"}, {"ó", "o"}, {"ô", "o"}, {"Ó", "o"},
+    {"ä", "a"}, {"ö", "o"}, {"ü", "u"}, {"Ä", "a"}, {"Ö", "o"},  {"Ü", "u"},   {"ß", "ss"},
+    {"é", "e"}, {"è", "e"}, {"ê", "e"}, {"É", "e"}, {"È", "e"},  {"à", "a"},   {"á", "a"},
+    {"â", "a"}, {"Á", "a"}, {"í", "i"}, {"î", "i"}, {"ó", "o"},  {"ô", "o"},   {"Ó", "o"},
     {"ú", "u"}, {"û", "u"}, {"ñ", "n"}, {"ç", "c"}, {"œ", "oe"}, {"Φ", "phi"}, {"φ", "phi"},
 };
 
@@ -56,100 +56,117 @@ static bool has_one_of(const char *word, const char *const *list, size_t n)
 #define HAS(word, list) has_one_of(word, list, COUNT(list))
 
 static const char *const of_no_use[] = {
-    "deriv",    "ableitung", "integral",  "baseline",   "grundlinie", "basislinie", "unsubtracted",
-    "sensit",   "massloss",  "weightloss", "massloss",  "masseverlust", "massenverlust", "purge",
-    "pressure", "voltage",   "gasflow",   "conversion", "gasfluss",   "lignedebase", "lineabase"};
+    "deriv",         "ableitung",   "integral", "baseline",   "grundlinie", "basislinie",
+    "unsubtracted",  "sensit",      "massloss", "weightloss", "massloss",   "masseverlust",
+    "massenverlust", "purge",       "pressure", "voltage",    "gasflow",    "conversion",
+    "gasfluss",      "lignedebase", "lineabase"};
 static const char *const of_no_use_whole[] = {
-    "tg",    "dtg",   "mass",    "masse",  "masa",  "weight", "index", "no",   "nr",    "n",
-    "point", "punkt", "row",     "id",     "number", "nummer", "date", "note", "gain",  "flag",
-    "ms",    "qms",   "ddsc"};
+    "tg",   "dtg",  "mass",  "masse", "masa", "weight", "index",  "no",
+    "nr",   "n",    "point", "punkt", "row",  "id",     "number", "nummer",
+    "date", "note", "gain",  "flag",  "ms",   "qms",    "ddsc"};
 static const char *const flow_words[] = {
-    "heatflow",        "heatflux",       "heatrate",      "flowofheat",     "warmestrom",
-    "waermestrom",     "warmefluss",     "waermefluss",   "warmeflu",       "fluxdechaleur",
-    "fluxthermique",   "fluxcalorifique", "flujodecalor", "flujotermico",   "flujocalorifico",
-    "puissancethermi", "flussotermico",  "flussodicalore", "dsc"};
-static const char *const flow_whole[] = {
-    "hf",  "phi",  "q",        "dhdt",   "dqdt",    "power",    "leistung", "puissance", "potencia",
-    "p",   "signal", "thermalpower", "hflow", "heatfl", "warmeleistung", "waermeleistung", "fluxo",
-    "flux", "flujo", "heat"};
+    "heatflow",        "heatflux",        "heatrate",       "flowofheat",   "warmestrom",
+    "waermestrom",     "warmefluss",      "waermefluss",    "warmeflu",     "fluxdechaleur",
+    "fluxthermique",   "fluxcalorifique", "flujodecalor",   "flujotermico", "flujocalorifico",
+    "puissancethermi", "flussotermico",   "flussodicalore", "dsc"};
+static const char *const flow_whole[] = {"hf",
+                                         "phi",
+                                         "q",
+                                         "dhdt",
+                                         "dqdt",
+                                         "power",
+                                         "leistung",
+                                         "puissance",
+                                         "potencia",
+                                         "p",
+                                         "signal",
+                                         "thermalpower",
+                                         "hflow",
+                                         "heatfl",
+                                         "warmeleistung",
+                                         "waermeleistung",
+                                         "fluxo",
+                                         "flux",
+                                         "flujo",
+                                         "heat"};
 static const char *const capacity_words[] = {
-    "heatcapacity",    "specificheat",      "warmekapaz",        "waermekapaz",
-    "capacitethermi",  "capacitecalorifi",  "chaleurspecifique", "chaleurmassique",
-    "capacidadcalori", "capacidadtermica",  "calorespecifico",   "capaciteterm"};
+    "heatcapacity",    "specificheat",     "warmekapaz",        "waermekapaz",
+    "capacitethermi",  "capacitecalorifi", "chaleurspecifique", "chaleurmassique",
+    "capacidadcalori", "capacidadtermica", "calorespecifico",   "capaciteterm"};
 static const char *const capacity_whole[] = {"cp", "revcp", "totalcp", "cpapp", "apparentcp"};
-static const char *const programme_words[] = {
-    "program", "setpoint", "soll",  "consigne", "refer", "furnace", "oven", "ofen",
-    "block",   "four",     "horno", "jacket",   "cell",  "zelle",   "set"};
+static const char *const programme_words[] = {"program", "setpoint", "soll", "consigne", "refer",
+                                              "furnace", "oven",     "ofen", "block",    "four",
+                                              "horno",   "jacket",   "cell", "zelle",    "set"};
 static const char *const programme_whole[] = {"tr", "tp", "tref", "tprog", "tset", "tfurnace"};
 static const char *const temperature_words[] = {"temperat", "tempreature", "temprature",
                                                 "temperture"};
 static const char *const temperature_whole[] = {
-    "temp", "ts", "tsample", "tprobe", "samplet", "sampletemp", "tempsample", "probentemp", "tk",
-    "tc", "tempc", "tempk", "tcorr"};
-static const char *const time_words[] = {"time", "zeit", "tiempo", "duree", "tempsecoul",
-                                         "duracion", "elapsed"};
+    "temp",       "ts", "tsample", "tprobe", "samplet", "sampletemp", "tempsample",
+    "probentemp", "tk", "tc",      "tempc",  "tempk",   "tcorr"};
+static const char *const time_words[] = {"time",       "zeit",     "tiempo", "duree",
+                                         "tempsecoul", "duracion", "elapsed"};
 static const char *const time_whole[] = {"temps", "tempo", "tmin", "tsec", "seconds", "minutes"};
 static const char *const segment_whole[] = {
-    "segment",  "seg",     "segmentnumber", "segmentno", "segmentnr", "segno",  "abschnitt",
-    "schritt",  "step",    "stepno",        "cycle",     "zyklus",    "etape",  "etapa",
-    "segmento", "paso",    "ciclo",         "stage",     "rampe",     "ramp",   "segmentnummer"};
+    "segment",  "seg",  "segmentnumber", "segmentno", "segmentnr", "segno", "abschnitt",
+    "schritt",  "step", "stepno",        "cycle",     "zyklus",    "etape", "etapa",
+    "segmento", "paso", "ciclo",         "stage",     "rampe",     "ramp",  "segmentnummer"};
 
-static ce_role by_name(const char *name)
+static ce_meaning by_name(const char *name)
 {
     char w[200];
-    if (strcmp(name, "t") == 0) return CE_ROLE_TIME;
-    if (strcmp(name, "T") == 0) return CE_ROLE_TEMPERATURE;
-    if (ce_fold_word(name, w, sizeof w) == 0) return CE_ROLE_UNKNOWN;
-    if (HAS(w, of_no_use) || IS(w, of_no_use_whole)) return CE_ROLE_OTHER;
-    if (IS(w, segment_whole)) return CE_ROLE_SEGMENT;
-    if (HAS(w, flow_words) || IS(w, flow_whole)) return CE_ROLE_HEAT_FLOW;
-    if (HAS(w, capacity_words) || IS(w, capacity_whole)) return CE_ROLE_HEAT_CAPACITY;
-    if (IS(w, programme_whole)) return CE_ROLE_PROGRAMME;
+    if (strcmp(name, "t") == 0) return CE_MEANS_TIME;
+    if (strcmp(name, "T") == 0) return CE_MEANS_TEMPERATURE;
+    if (ce_fold_word(name, w, sizeof w) == 0) return CE_MEANS_UNKNOWN;
+    if (HAS(w, of_no_use) || IS(w, of_no_use_whole)) return CE_MEANS_OTHER;
+    if (IS(w, segment_whole)) return CE_MEANS_SEGMENT;
+    if (HAS(w, flow_words) || IS(w, flow_whole)) return CE_MEANS_HEAT_FLOW;
+    if (HAS(w, capacity_words) || IS(w, capacity_whole)) return CE_MEANS_HEAT_CAPACITY;
+    if (IS(w, programme_whole)) return CE_MEANS_PROGRAMME;
     if (HAS(w, temperature_words) || IS(w, temperature_whole))
-        return HAS(w, programme_words) ? CE_ROLE_PROGRAMME : CE_ROLE_TEMPERATURE;
-    if (HAS(w, time_words) || IS(w, time_whole)) return CE_ROLE_TIME;
+        return HAS(w, programme_words) ? CE_MEANS_PROGRAMME : CE_MEANS_TEMPERATURE;
+    if (HAS(w, time_words) || IS(w, time_whole)) return CE_MEANS_TIME;
     /* "Temp 1", "Heat 2", "Temp. sample": a known word with something behind it. */
     if (strncmp(w, "temp", 4) == 0)
-        return HAS(w, programme_words) ? CE_ROLE_PROGRAMME : CE_ROLE_TEMPERATURE;
+        return HAS(w, programme_words) ? CE_MEANS_PROGRAMME : CE_MEANS_TEMPERATURE;
     if (strncmp(w, "hf", 2) == 0 && (w[2] == '\0' || isdigit((unsigned char)w[2])))
-        return CE_ROLE_HEAT_FLOW;
+        return CE_MEANS_HEAT_FLOW;
     if (strncmp(w, "cp", 2) == 0 && (w[2] == '\0' || isdigit((unsigned char)w[2])))
-        return CE_ROLE_HEAT_CAPACITY;
-    return CE_ROLE_UNKNOWN;
+        return CE_MEANS_HEAT_CAPACITY;
+    return CE_MEANS_UNKNOWN;
 }
 
-bool ce_role_fits(ce_role role, const ce_unit *unit)
+bool ce_meaning_fits(ce_meaning role, const ce_unit *unit)
 {
     if (unit == NULL) return true;
     switch (role) {
-    case CE_ROLE_TIME:
+    case CE_MEANS_TIME:
         return unit->dimension == CE_DIM_TIME;
-    case CE_ROLE_TEMPERATURE:
-    case CE_ROLE_PROGRAMME:
+    case CE_MEANS_TEMPERATURE:
+    case CE_MEANS_PROGRAMME:
         return unit->dimension == CE_DIM_TEMPERATURE;
-    case CE_ROLE_HEAT_FLOW:
+    case CE_MEANS_HEAT_FLOW:
         return unit->dimension == CE_DIM_POWER || unit->dimension == CE_DIM_SPECIFIC_POWER;
-    case CE_ROLE_HEAT_CAPACITY:
+    case CE_MEANS_HEAT_CAPACITY:
         return unit->dimension == CE_DIM_HEAT_CAPACITY;
     default:
         return true;
     }
 }
 
-static ce_role by_unit(const ce_unit *unit)
+static ce_meaning by_unit(const ce_unit *unit)
 {
     switch (unit->dimension) {
     case CE_DIM_TIME:
-        return CE_ROLE_TIME;
+        return CE_MEANS_TIME;
     case CE_DIM_TEMPERATURE:
-        return CE_ROLE_TEMPERATURE;
+        return CE_MEANS_TEMPERATURE;
     case CE_DIM_POWER:
     case CE_DIM_SPECIFIC_POWER:
-        return CE_ROLE_HEAT_FLOW;
+        return CE_MEANS_HEAT_FLOW;
     case CE_DIM_HEAT_CAPACITY:
-        return CE_ROLE_HEAT_CAPACITY;
+        return CE_MEANS_HEAT_CAPACITY;
     default:
-        return CE_ROLE_OTHER;
+        return CE_MEANS_OTHER;
     }
 }
 
@@ -162,37 +179,37 @@ static bool open_word(const char *name)
     return IS(w, open);
 }
 
-ce_role ce_role_of(const char *name, const ce_unit *unit)
+ce_meaning ce_meaning_of(const char *name, const ce_unit *unit)
 {
-    ce_role role = by_name(name);
-    if (unit == NULL || role == CE_ROLE_OTHER || role == CE_ROLE_SEGMENT) return role;
-    if (role == CE_ROLE_UNKNOWN || open_word(name)) return by_unit(unit);
-    if (ce_role_fits(role, unit)) return role;
+    ce_meaning role = by_name(name);
+    if (unit == NULL || role == CE_MEANS_OTHER || role == CE_MEANS_SEGMENT) return role;
+    if (role == CE_MEANS_UNKNOWN || open_word(name)) return by_unit(unit);
+    if (ce_meaning_fits(role, unit)) return role;
     /* A DSC signal may have been turned into a heat capacity and kept its name, and back. */
-    ce_role other = by_unit(unit);
-    bool signals = (role == CE_ROLE_HEAT_FLOW || role == CE_ROLE_HEAT_CAPACITY) &&
-                   (other == CE_ROLE_HEAT_FLOW || other == CE_ROLE_HEAT_CAPACITY);
-    return signals ? other : CE_ROLE_UNKNOWN;
+    ce_meaning other = by_unit(unit);
+    bool signals = (role == CE_MEANS_HEAT_FLOW || role == CE_MEANS_HEAT_CAPACITY) &&
+                   (other == CE_MEANS_HEAT_FLOW || other == CE_MEANS_HEAT_CAPACITY);
+    return signals ? other : CE_MEANS_UNKNOWN;
 }
 
-const char *ce_role_name(ce_role role)
+const char *ce_meaning_name(ce_meaning role)
 {
     switch (role) {
-    case CE_ROLE_TIME:
+    case CE_MEANS_TIME:
         return "time";
-    case CE_ROLE_TEMPERATURE:
+    case CE_MEANS_TEMPERATURE:
         return "temperature";
-    case CE_ROLE_PROGRAMME:
+    case CE_MEANS_PROGRAMME:
         return "programme temperature";
-    case CE_ROLE_HEAT_FLOW:
+    case CE_MEANS_HEAT_FLOW:
         return "heat flow";
-    case CE_ROLE_HEAT_CAPACITY:
+    case CE_MEANS_HEAT_CAPACITY:
         return "heat capacity";
-    case CE_ROLE_SEGMENT:
+    case CE_MEANS_SEGMENT:
         return "segment";
-    case CE_ROLE_OTHER:
+    case CE_MEANS_OTHER:
         return "not used";
-    case CE_ROLE_UNKNOWN:
+    case CE_MEANS_UNKNOWN:
         break;
     }
     return "unknown";
@@ -203,13 +220,13 @@ static const struct {
     const char *word;
     int up;
 } directions[] = {
-    {"upwards", 1},  {"upward", 1},   {"up", 1},       {"downwards", -1}, {"downward", -1},
-    {"down", -1},    {"oben", 1},     {"unten", -1},   {"haut", 1},       {"bas", -1},
-    {"arriba", 1},   {"abajo", -1},   {"positive", 1}, {"positiv", 1},    {"positif", 1},
-    {"positivo", 1}, {"positiva", 1}, {"negative", -1}, {"negativ", -1},  {"négatif", -1},
-    {"negatif", -1}, {"negativo", -1}, {"negativa", -1}, {"↑", 1},        {"↓", -1},
-    {"⇑", 1},        {"⇓", -1},       {"▲", 1},        {"▼", -1},         {"^", 1},
-    {">0", 1},       {"<0", -1},      {"> 0", 1},      {"< 0", -1},       {"+", 1},
+    {"upwards", 1},  {"upward", 1},    {"up", 1},        {"downwards", -1}, {"downward", -1},
+    {"down", -1},    {"oben", 1},      {"unten", -1},    {"haut", 1},       {"bas", -1},
+    {"arriba", 1},   {"abajo", -1},    {"positive", 1},  {"positiv", 1},    {"positif", 1},
+    {"positivo", 1}, {"positiva", 1},  {"negative", -1}, {"negativ", -1},   {"négatif", -1},
+    {"negatif", -1}, {"negativo", -1}, {"negativa", -1}, {"↑", 1},          {"↓", -1},
+    {"⇑", 1},        {"⇓", -1},        {"▲", 1},         {"▼", -1},         {"^", 1},
+    {">0", 1},       {"<0", -1},       {"> 0", 1},       {"< 0", -1},       {"+", 1},
     {"->", 0},
 };
 
@@ -249,8 +266,7 @@ static bool find_sign(const char *low, const char *p, const char **from, const c
         const char *q = p + stem;
         for (; *q != '\0' && q - p < REACH && k == 0; q++) {
             k = direction_at(low, q, &up);
-            if (k == 0 && q > p + stem &&
-                (strncmp(q, "exo", 3) == 0 || strncmp(q, "endo", 4) == 0))
+            if (k == 0 && q > p + stem && (strncmp(q, "exo", 3) == 0 || strncmp(q, "endo", 4) == 0))
                 break;
         }
         *from = p;
@@ -318,22 +334,56 @@ ce_sign ce_sign_of(const char *text, char *clean, size_t room)
 
 ce_key ce_key_of(const char *key)
 {
-    static const char *const mass[] = {
-        "mass",        "samplemass",   "massofsample", "weight",       "sampleweight",
-        "samplesize",  "size",         "masse",        "probenmasse",  "einwaage",
-        "probeneinwaage", "masa",      "masademuestra", "masadelamuestra", "initialmass",
-        "massedelechantillon", "massedechantillon", "masseechantillon", "gewicht", "probengewicht",
-        "peso",        "pesomuestra",  "pesodelamuestra", "masamuestra", "massesample", "prisedessai"};
-    static const char *const rate[] = {
-        "rate",       "heatingrate",   "scanrate",     "ramprate",     "heizrate", "aufheizrate",
-        "vitesse",    "vitessedechauffe", "vitessedechauffage", "velocidad", "ramp",
-        "velocidaddecalentamiento", "tasadecalentamiento", "heatrate", "rampe", "rampa"};
+    static const char *const mass[] = {"mass",
+                                       "samplemass",
+                                       "massofsample",
+                                       "weight",
+                                       "sampleweight",
+                                       "samplesize",
+                                       "size",
+                                       "masse",
+                                       "probenmasse",
+                                       "einwaage",
+                                       "probeneinwaage",
+                                       "masa",
+                                       "masademuestra",
+                                       "masadelamuestra",
+                                       "initialmass",
+                                       "massedelechantillon",
+                                       "massedechantillon",
+                                       "masseechantillon",
+                                       "gewicht",
+                                       "probengewicht",
+                                       "peso",
+                                       "pesomuestra",
+                                       "pesodelamuestra",
+                                       "masamuestra",
+                                       "massesample",
+                                       "prisedessai"};
+    static const char *const rate[] = {"rate",
+                                       "heatingrate",
+                                       "scanrate",
+                                       "ramprate",
+                                       "heizrate",
+                                       "aufheizrate",
+                                       "vitesse",
+                                       "vitessedechauffe",
+                                       "vitessedechauffage",
+                                       "velocidad",
+                                       "ramp",
+                                       "velocidaddecalentamiento",
+                                       "tasadecalentamiento",
+                                       "heatrate",
+                                       "rampe",
+                                       "rampa"};
     static const char *const sample[] = {
-        "sample",      "samplename",   "sampleid",      "probe",   "probenname", "probenbezeichnung",
-        "echantillon", "nomdelechantillon", "muestra", "nombredelamuestra", "name", "nom", "nombre",
-        "specimen"};
-    static const char *const direction[] = {"direction", "sign", "heatflowdirection", "vorzeichen",
-                                            "signe", "signo", "richtung", "exo", "endo"};
+        "sample",     "samplename",        "sampleid",    "probe",
+        "probenname", "probenbezeichnung", "echantillon", "nomdelechantillon",
+        "muestra",    "nombredelamuestra", "name",        "nom",
+        "nombre",     "specimen"};
+    static const char *const direction[] = {"direction",  "sign",  "heatflowdirection",
+                                            "vorzeichen", "signe", "signo",
+                                            "richtung",   "exo",   "endo"};
     char w[128];
     (void)ce_fold_word(key, w, sizeof w);
     if (IS(w, mass)) return CE_KEY_MASS;
@@ -345,10 +395,10 @@ ce_key ce_key_of(const char *key)
 
 int ce_direction_of(const char *text)
 {
-    static const char *const heating[] = {"heating", "aufheiz", "heizen", "heizung", "chauff",
-                                          "calent", "heatup"};
-    static const char *const cooling[] = {"cooling", "abkuhl", "abkuehl", "kuhlen", "kuehlen",
-                                          "kuhlung", "kuehlung", "refroid", "enfri", "cooldown"};
+    static const char *const heating[] = {"heating", "aufheiz", "heizen", "heizung",
+                                          "chauff",  "calent",  "heatup"};
+    static const char *const cooling[] = {"cooling", "abkuhl",   "abkuehl", "kuhlen", "kuehlen",
+                                          "kuhlung", "kuehlung", "refroid", "enfri",  "cooldown"};
     char w[200];
     (void)ce_fold_word(text, w, sizeof w);
     bool h = HAS(w, heating), c = HAS(w, cooling);

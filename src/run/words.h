@@ -8,22 +8,22 @@
 #include "base/quantity.h"
 
 typedef enum {
-    CE_ROLE_UNKNOWN,
-    CE_ROLE_TIME,
-    CE_ROLE_TEMPERATURE, /* of the sample                                        */
-    CE_ROLE_PROGRAMME,   /* temperature of the programme, furnace or reference   */
-    CE_ROLE_HEAT_FLOW,
-    CE_ROLE_HEAT_CAPACITY,
-    CE_ROLE_SEGMENT, /* number of the programme segment                      */
-    CE_ROLE_OTHER    /* known, and of no use here                            */
-} ce_role;
+    CE_MEANS_UNKNOWN,
+    CE_MEANS_TIME,
+    CE_MEANS_TEMPERATURE, /* of the sample                                        */
+    CE_MEANS_PROGRAMME,   /* temperature of the programme, furnace or reference   */
+    CE_MEANS_HEAT_FLOW,
+    CE_MEANS_HEAT_CAPACITY,
+    CE_MEANS_SEGMENT, /* number of the programme segment                      */
+    CE_MEANS_OTHER    /* known, and of no use here                            */
+} ce_meaning;
 
 /* The role a column name and its unit (NULL = none or unknown) give; unit decides where the words
  * leave it open ("t", "temps"). A recognised name whose unit is of another dimension is UNKNOWN. */
-ce_role ce_role_of(const char *name, const ce_unit *unit);
+ce_meaning ce_meaning_of(const char *name, const ce_unit *unit);
 /* May a unit stand with a role at all. */
-bool ce_role_fits(ce_role role, const ce_unit *unit);
-const char *ce_role_name(ce_role role);
+bool ce_meaning_fits(ce_meaning role, const ce_unit *unit);
+const char *ce_meaning_name(ce_meaning role);
 
 /* What a text says about the direction of heat flow: "exo up", "endo-down", "exo ↑", "endotherm
  * nach oben" ...; CE_SIGN_AUTO when nothing. clean, room long, gets the text without those words
