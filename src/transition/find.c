@@ -266,8 +266,10 @@ static ce_status evaluate(const curve *c, const place *p, const ce_transition_op
                         fmax(v[CE_END], v[CE_HALF_STEP]) + 1.0 * width, 2.0, 25.0);
         b.lb = index_of(c, last);
     }
-    if (!isnan(o->glass.low_K)) b.ga = index_of(c, o->glass.low_K), b.gb = index_of(c, o->glass.high_K);
-    if (!isnan(o->liquid.low_K)) b.la = index_of(c, o->liquid.low_K), b.lb = index_of(c, o->liquid.high_K);
+    if (!isnan(o->glass.low_K))
+        b.ga = index_of(c, o->glass.low_K), b.gb = index_of(c, o->glass.high_K);
+    if (!isnan(o->liquid.low_K))
+        b.la = index_of(c, o->liquid.low_K), b.lb = index_of(c, o->liquid.high_K);
     if (!fit_baselines(c, &b))
         return ce_fail(err, CE_E_REFUSED, "too little curve beside the step for two baselines");
     construct(c, &b, c->T[b.gb], c->T[b.la], v, &tangent);
