@@ -173,6 +173,8 @@ typedef struct {
     ce_language language;         /* of header and preamble                    (default EN)    */
     bool preamble;                /* lines about the sample above the table    (default false) */
     bool crlf;                    /* line ends                                 (default false) */
+    bool last_heating_only; /* leave out what was recorded before it, and count time from there
+                               (default false)                                               */
 } ce_layout;
 CE_API ce_layout ce_layout_default(void);
 /* Ready-made layouts "comma", "semicolon", "tab", "blanks"; false when there is no such name. */
@@ -254,6 +256,27 @@ typedef struct {
 CE_API ce_status ce_simulate_series(const ce_series_plan *plan, ce_simulated_series *series,
                                     ce_error *err);
 CE_API void ce_simulated_series_free(ce_simulated_series *series);
+
+/* What a series file and its truth say besides the numbers. Borrowed; UTF-8, one line each. */
+typedef struct {
+    const char *polymer, *scope; /* settings lines; NULL = none                              */
+    const char *relation;        /* name of the relation                                     */
+    size_t n_parameters;
+    const char *const *parameter_name; /* JSON keys, e.g. "Tg_inf_K", "K_K_g_mol"              */
+    const double *parameter;
+    const char *const *run_file; /* of every reading in order, or NULL for bare Tg values    */
+} ce_series_words;
+/* The series file (CSV, as series(5) has it), and the truth as JSON text, schema
+ * "chainend.simulate-series/1"; both the caller's to free(). Parameters are those of the plan that
+ * made the series. */
+CE_API ce_status ce_simulated_series_table(const ce_series_plan *plan,
+                                           const ce_simulated_series *series,
+                                           const ce_series_words *words, char **text,
+                                           ce_error *err);
+CE_API ce_status ce_simulated_series_json(const ce_series_plan *plan,
+                                          const ce_simulated_series *series,
+                                          const ce_series_words *words, char **json,
+                                          ce_error *err);
 
 #ifdef __cplusplus
 }

@@ -130,6 +130,23 @@ static ce_status record_points(const ce_trace *trace, const double *signal, ce_s
     return st;
 }
 
+/* Which rows are the last recorded heating. */
+static void find_last_heating(const ce_trace *trace, ce_simulation *sim)
+{
+    const ce_stretch *last = NULL;
+    for (size_t s = 0; s < trace->n_stretches; s++)
+        if (trace->stretch[s].recorded && trace->stretch[s].kind == CE_HEATING)
+            last = &trace->stretch[s];
+    if (last == NULL) return;
+    for (size_t i = 0; i <= last->last; i++) {
+        if (!trace->tick[i]) continue;
+        if (i < last->first)
+            sim->last_heating++;
+        else
+            sim->last_heating_n++;
+    }
+}
+
 static ce_status one_truth(const ce_trace *trace, const ce_stretch *stretch, size_t g,
                            ce_simulation *sim, ce_error *err)
 {
@@ -193,6 +210,7 @@ ce_status ce_simulation_record(const ce_simulation_config *config, const ce_trac
     if (st != CE_OK) (void)ce_fail(err, st, "out of memory");
     if (st == CE_OK) st = node_signal(config, trace, signal, err);
     if (st == CE_OK) st = record_points(trace, signal, sim, err);
+    if (st == CE_OK) find_last_heating(trace, sim);
     if (st == CE_OK) st = record_truth(trace, sim, err);
     free(signal);
     if (st == CE_OK) {

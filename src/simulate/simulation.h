@@ -10,6 +10,7 @@ struct ce_simulation {
     ce_programme_step *step;
     size_t n;
     double *t_s, *t_K, *signal_mW, *tf_K[CE_MAX_GLASSES];
+    size_t last_heating, last_heating_n; /* rows of the last recorded heating; n 0 = none */
     size_t n_truth;
     ce_ramp_truth *truth;
 };
