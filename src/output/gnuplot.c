@@ -44,7 +44,7 @@ void ce_plot_begin(FILE *to, const char *kind, const char *title, double height)
           "set termoption noenhanced\n"
           "set border 31 linewidth 0.6 linecolor rgb '#404040'\n"
           "set tics nomirror scale 0.6 textcolor rgb '#202020'\n"
-          "set key samplen 2 spacing 1.1 width -1 textcolor rgb '#202020' noenhanced\n"
+          "set key below samplen 2 spacing 1.1 textcolor rgb '#202020' noenhanced Left reverse\n"
           "set style line 1 linecolor rgb '#000000' linewidth 1.0 pointtype 7 pointsize 0.45\n"
           "set style line 2 linecolor rgb '#1f4e8c' linewidth 1.4\n"
           "set style line 3 linecolor rgb '#8c5a1f' linewidth 1.0 dashtype (8,4)\n"
