@@ -59,6 +59,10 @@ CE_API ce_status ce_fail(ce_error *err, ce_status code, const char *fmt, ...) CE
 CE_API ce_status ce_fail_at(ce_error *err, ce_status code, const char *file, size_t line,
                             size_t column, const char *fmt, ...) CE_PRINTF(6, 7);
 
+/* Limits of any delimited text, enforced before anything is allocated. */
+#define CE_MAX_COLUMNS ((size_t)4096)  /* columns of one table */
+#define CE_MAX_CELL    ((size_t)65536) /* bytes in one cell    */
+
 /* Messages collected on the way, so that everything wrong is reported at once. */
 typedef enum { CE_NOTE, CE_WARNING, CE_ERROR } ce_severity;
 typedef struct {

@@ -11,14 +11,11 @@
 #define CHAINEND_CHAINEND_H
 
 #include <chainend/base.h>
-#include <chainend/version.h>
-
-#include <chainend/run.h>
-
-#include <chainend/transition.h>
-
-#include <chainend/fit.h>
-
 #include <chainend/estimate.h>
+#include <chainend/fit.h>
+#include <chainend/run.h>
+#include <chainend/series.h>
+#include <chainend/transition.h>
+#include <chainend/version.h>
 
 #endif

@@ -1,5 +1,9 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later
- * Mn from a Tg, Tg from an Mn, with what can be said and what cannot. */
+ * Mn from a Tg, Tg from an Mn, with what can be said and what cannot; whether a calibration still
+ * holds; what would narrow its answers. Methods and sources: chainend-methods(7).
+ *
+ * Everything here reads a ce_fit and changes nothing: functions may run in parallel on one fit. A
+ * fit read back from a record gives the same digits as the fit itself. */
 #ifndef CHAINEND_ESTIMATE_H
 #define CHAINEND_ESTIMATE_H
 
@@ -10,6 +14,10 @@
 extern "C" {
 #endif
 
+/* ---- Mn from Tg ------------------------------------------------------------------------------ */
+
+/* What the set of molar masses looks like. With a falling relation (negative slope parameter) the
+ * same words hold with the plateau approached from above. */
 typedef enum {
     CE_TWO_SIDED,     /* "two-sided": finite limits on both sides                       */
     CE_LOWER_ONLY,    /* "lower-only": the reading cannot be told from the plateau      */
@@ -18,55 +26,142 @@ typedef enum {
 } ce_bound;
 CE_API const char *ce_bound_name(ce_bound bound);
 
-/* One unknown: n readings of its Tg. */
+/* One unknown: n readings of its Tg, all of the same sample. Start from ce_unknown_default(). */
 typedef struct {
-    size_t n;
-    const double *tg_K;
-    double tg_u_K;  /* stated standard uncertainty of one reading; NaN = as the standards' runs */
-    size_t mean_of; /* each reading is the mean of so many runs (default 1)                     */
-    double mw_over_mn; /* for relations in Mn and Mw; NaN = 1 */
-    double chain_ends; /* default 2 */
+    size_t n;            /* readings, >= 1                                                       */
+    const double *tg_K;  /* n of them, borrowed                                                  */
+    double tg_u_K;       /* stated standard uncertainty of one reading (all of it: repeatability
+                            included; 0 = exact); NaN = as the runs of the standards             */
+    size_t mean_of;      /* each reading is the mean of so many runs (default 1)                 */
+    double mw_over_mn;   /* dispersity, for relations in Mn and Mw; NaN = 1 (default NaN)        */
+    double chain_ends;   /* per molecule (default 2)                                             */
+    double reading_u_K;  /* what the evaluation of one run reports (noise and windows); raises the
+                            scatter of a run where it is larger and is named in the budget;
+                            NaN = not known (default)                                            */
+    double rate_decades; /* log10(rate/reference) the readings were reduced by (default 0)       */
+    bool other_instrument;  /* temperature scale not that of the standards: their common
+                               uncertainty counts (default false: it cancels)                    */
+    bool certificate_scale; /* Mn wanted on the scale of the certificates: what they have in common
+                               does not count (default false)                                   */
 } ce_unknown;
+CE_API ce_unknown ce_unknown_default(void);
 
-#define CE_MAX_SHARES 8
+/* Parts of the variance of an answer, as they appear in a budget. */
+typedef enum {
+    CE_SHARE_READING,       /* noise and windows of the unknown's own runs                  */
+    CE_SHARE_REPEATABILITY, /* the rest of their run-to-run scatter                         */
+    CE_SHARE_SAMPLE,        /* between-sample scatter the fit found, carried by the unknown */
+    CE_SHARE_TEMPERATURE,   /* temperature scale                                            */
+    CE_SHARE_RATE,          /* slope used to reduce readings to one heating rate            */
+    CE_SHARE_CERTIFICATES,  /* certificates of the standards                                */
+    CE_SHARE_STANDARDS,     /* between-sample scatter of the standards                      */
+    CE_SHARE_FIT,           /* run scatter of the standards                                 */
+    CE_SHARE_COMMON_MN,     /* what all certificates have in common                         */
+    CE_SHARES
+} ce_share_source;
+/* "reading", "repeatability", "between samples", "temperature scale", "heating rate",
+ * "certificates", "standards' samples", "standards' runs", "common Mn scale". */
+CE_API const char *ce_share_name(ce_share_source source);
+
+#define CE_MAX_SHARES 9
 typedef struct {
-    const char *source; /* "reading", "repeatability", "certificates", ... static */
-    double share;       /* of the variance, 0..1; they add to 1                   */
+    const char *source; /* ce_share_name(); static                                */
+    double share;       /* of the variance in Tg at the estimate, 0..1; they add to 1 */
 } ce_share;
 
+/* Doubts about an estimate. */
+enum {
+    CE_EST_BELOW_STANDARDS = 1u << 0, /* extrapolated below the smallest standard               */
+    CE_EST_ABOVE_STANDARDS = 1u << 1, /* extrapolated above the largest standard                */
+    CE_EST_HIGH_ABSURD = 1u << 2,     /* upper limit beyond cap_g_mol: show "> cap"             */
+    CE_EST_SCATTERED = 1u << 3,       /* readings scatter more than the standards' runs: own scatter
+                                         used, see ce_estimate.own_sd_K                              */
+    CE_EST_TOO_QUIET = 1u << 4, /* readings scatter less than the standards' runs can: not pooled */
+    CE_EST_FALLING = 1u << 5,   /* the relation falls with Mn: not a chain-end effect          */
+    CE_EST_CURVE_EXTENDED = 1u << 6 /* a limit lies outside the standards                       */
+};
+/* One plain sentence for one bit; "" for anything else. */
+CE_API const char *ce_estimate_flag_text(unsigned bit);
+
 typedef struct {
-    double tg_K, u_K; /* mean reading and its standard uncertainty                     */
-    double mn_g_mol;  /* point estimate; NaN above the plateau                         */
-    double low_g_mol, high_g_mol; /* limits at level; NaN = none on that side                  */
+    double tg_K, u_K; /* mean reading; its standard uncertainty, between-sample scatter included */
+    double mn_g_mol;  /* point estimate; NaN at and above the plateau                            */
+    double low_g_mol, high_g_mol; /* limits at level; NaN = none on that side                    */
     ce_bound bound;
-    bool disjoint;       /* slope not significant: the set is everything but (low, high)   */
-    double level, t, nu; /* coverage, Student factor, effective degrees of freedom        */
+    bool disjoint;       /* slope not significant: the set is everything but (low, high)         */
+    double level, t, nu; /* coverage, Student factor, effective degrees of freedom               */
+    double g;            /* Fieller's g: the slope is significant iff g < 1                      */
+    double u_log;        /* relative standard uncertainty of Mn, first order: for budgets only; NaN
+                            without estimate                                                     */
     size_t n_shares;
-    ce_share share[CE_MAX_SHARES];
-    bool below_standards, above_standards; /* extrapolated                                     */
+    ce_share share[CE_MAX_SHARES]; /* largest first                                              */
+    bool below_standards, above_standards; /* extrapolated                                       */
+    unsigned flags;          /* CE_EST_*                                                   */
+    double cap_g_mol;        /* ten times the largest standard: no limit above it means much */
+    double run_sd_K, run_nu; /* scatter of one run as used, and its degrees of freedom     */
+    double own_sd_K;         /* scatter of one run from the readings alone; NaN when n < 2 */
+    bool pooled;             /* the two were pooled                                        */
 } ce_estimate;
 
 /* ce_estimate_mn - the set of molar masses a Tg is compatible with.
- *   in   fit, unknown, level (0 = the fit's)
- *   ret  CE_OK | CE_E_ARG | CE_E_DOMAIN | CE_E_NOMEM
- *   Source: Fieller, J. R. Stat. Soc. B 16 (1954) 175; classification in chainend-methods(7). */
+ *   in   fit, unknown (note 1), level (0 = the fit's)
+ *   out  estimate   zeroed unless CE_OK
+ *   ret  CE_OK | CE_E_ARG (no reading, not finite, level, dispersity) | CE_E_DOMAIN (reading below
+ *        0 K or below anything the relation can give; chain_ends 0: no relation left) | CE_E_NOMEM
+ *   1) Scatter of one run, with nu_w degrees: the standards' s_w; with n >= 2 readings the two
+ *      scatters are pooled, s^2 = (nu_w s_w^2 + (n-1) mean_of s_0^2) / (nu_w + n - 1), unless an F
+ *      test at 1 % two-sided tells them apart: then the unknown's own scatter counts when it is the
+ *      larger one, and the standards' when it is suspiciously small. A stated tg_u_K is used as it
+ *      is, with infinite degrees of freedom.
+ *   2) Relations linear in a power of 1/Mn: Fieller's set in that abscissa, closed form. The
+ * others: the same test inverted, with the asymptote deciding about the upper limit. t has the
+ *      Welch-Satterthwaite degrees of freedom at the estimate.
+ *   Sources: Fieller, J. R. Stat. Soc. B 16 (1954) 175; JCGM 100:2008 G.4; chainend-methods(7). */
 CE_API ce_status ce_estimate_mn(const ce_fit *fit, const ce_unknown *unknown, double level,
                                 ce_estimate *estimate, ce_error *err);
+
+/* ce_estimate_hint - which contribution to attack first, one or two plain sentences with numbers.
+ *   text is always terminated; nothing is said where nothing can be (text[0] == 0).
+ *   ret  CE_OK | CE_E_ARG | CE_E_NOMEM */
+CE_API ce_status ce_estimate_hint(const ce_fit *fit, const ce_unknown *unknown,
+                                  const ce_estimate *estimate, char *text, size_t room);
+
+/* ---- Tg from Mn ------------------------------------------------------------------------------ */
 
 typedef struct {
     double mn_g_mol, tg_K;
     double mean_low_K, mean_high_K; /* confidence interval of the curve                        */
     double low_K, high_K;           /* prediction interval of a new sample measured runs times */
     double u_mean_K, u_K, nu_mean, nu, level;
+    double u_scale_K; /* common uncertainty of the temperature scale: add in quadrature to compare
+                         with a Tg of another instrument; not in the intervals above            */
+    bool below_standards, above_standards; /* extrapolated */
 } ce_tg_estimate;
-/* Tg expected at a molar mass; mn_u_rel is the relative standard uncertainty of that Mn (0 =
- * exact), runs >= 1. */
+/* Tg expected at a molar mass on the scale of the certificates; mn_u_rel is the relative standard
+ * uncertainty of that Mn (0 = exact), runs >= 1, level 0 = the fit's.
+ * CE_OK | CE_E_ARG | CE_E_DOMAIN. Sources: as ce_estimate_mn. */
 CE_API ce_status ce_estimate_tg(const ce_fit *fit, const ce_molar *molar, double mn_u_rel,
                                 size_t runs, double level, ce_tg_estimate *estimate, ce_error *err);
 
-/* Highest reading with a finite upper limit, for unknowns of runs runs, and the Mn there. */
+/* ---- working range --------------------------------------------------------------------------- */
+
+/* Highest reading with a finite upper limit, for unknowns of runs runs, and the Mn there. Linear
+ * chains, dispersity 1. CE_OK | CE_E_ARG | CE_E_REFUSED (slope not significant: no reading has one;
+ * outputs NaN). */
 CE_API ce_status ce_ceiling(const ce_fit *fit, size_t runs, double level, double *tg_K,
                             double *mn_g_mol);
+
+/* One line of the working range: what an unknown of this molar mass would get, its readings lying
+ * exactly on the curve. */
+typedef struct {
+    double mn_g_mol, tg_K, low_g_mol, high_g_mol; /* NaN as in ce_estimate                      */
+    ce_bound bound;
+    double relative; /* half-width over mn; NaN when not two-sided                              */
+} ce_range_row;
+/* n rows for given molar masses, unknowns of runs runs. CE_OK | CE_E_ARG | CE_E_DOMAIN |
+ * CE_E_NOMEM. */
+CE_API ce_status ce_working_range(const ce_fit *fit, size_t runs, double level, size_t n,
+                                  const double *mn_g_mol, ce_range_row *row, ce_error *err);
 
 #ifdef __cplusplus
 }

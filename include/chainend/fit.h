@@ -4,6 +4,7 @@
 #define CHAINEND_FIT_H
 
 #include <chainend/base.h>
+#include <chainend/series.h>
 
 #include <stdbool.h>
 #include <stdint.h>
@@ -232,6 +233,9 @@ typedef struct {
  *   Sources: York et al., Am. J. Phys. 72 (2004) 367; see chainend-methods(7). */
 CE_API ce_status ce_fit_relation(size_t n_standards, const ce_standard *standard,
                                  const ce_fit_options *options, ce_fit *fit, ce_error *err);
+/* The same for the used standards of an evaluated series. */
+CE_API ce_status ce_fit_series(const ce_series *series, const ce_fit_options *options, ce_fit *fit,
+                               ce_error *err);
 /* Releases what the fit owns and empties it. NULL allowed; a fit set to {0} too. */
 CE_API void ce_fit_free(ce_fit *fit);
 /* What the lack-of-fit test of this fit tests, in plain words: with uncertain Mn it is not

@@ -14,8 +14,6 @@ extern "C" {
 
 /* Limits, enforced before anything is allocated. */
 #define CE_MAX_POINTS   ((size_t)20000000) /* points of one run                             */
-#define CE_MAX_COLUMNS  ((size_t)4096)     /* columns of one table                          */
-#define CE_MAX_CELL     ((size_t)65536)    /* bytes in one cell                             */
 #define CE_MAX_SEGMENTS ((size_t)1000)     /* programme segments of one run                 */
 
 /* What the third column holds; values are always endothermic up. */

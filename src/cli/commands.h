@@ -1,0 +1,19 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later
+ * The commands: one table for dispatch, for help and for the tests. A line each: name, what it
+ * does. */
+#ifndef CE_CLI_COMMANDS_H
+#define CE_CLI_COMMANDS_H
+
+#define CLI_COMMANDS(X)                                                                            \
+    X(inspect, "what the reader found in each run file")                                           \
+    X(tg, "the glass transition of each run, every construction")                                  \
+    X(series, "evaluate a series, show the pairs of Mn and Tg")                                    \
+    X(fit, "fit the Tg-Mn relation, with intervals and diagnostics")                               \
+    X(estimate, "Mn from Tg, Tg from Mn, with an interval")                                        \
+    X(figure, "a gnuplot script with its data inside, and the picture")
+
+#define X(name, summary) int cmd_##name(int argc, char **argv);
+CLI_COMMANDS(X)
+#undef X
+
+#endif

@@ -1,0 +1,6 @@
+ce_unit_test(estimate fieller)
+if(NOT EXISTS "${PROJECT_SOURCE_DIR}/src/fit/CMakeLists.txt")
+  foreach(t fieller)
+    target_sources(test_estimate_${t} PRIVATE estimate/fit_stub.c)
+  endforeach()
+endif()
