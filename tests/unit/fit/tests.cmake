@@ -1,1 +1,1 @@
-ce_unit_test(fit flory_fox)
+ce_unit_test(fit flory_fox nls)
