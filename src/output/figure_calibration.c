@@ -15,7 +15,7 @@ typedef struct {
 
 static extent extent_of(const ce_estimate_result *r)
 {
-    extent x = {INFINITY, 0.0};
+    extent x = {(double)INFINITY, 0.0};
     for (size_t i = 0; i < r->fit->n_points; i++) {
         x.low_mn = fmin(x.low_mn, r->fit->point[i].molar.mn_g_mol);
         x.high_mn = fmax(x.high_mn, r->fit->point[i].molar.mn_g_mol);
@@ -37,7 +37,7 @@ static void put_band(FILE *to, const ce_estimate_result *r, const char *name, ex
         double f = (double)i / GRID;
         double mn = reciprocal ? 1.0 / (1.0 / x.high_mn + f * (1.0 / x.low_mn - 1.0 / x.high_mn))
                                : x.low_mn * pow(x.high_mn / x.low_mn, f);
-        if (reciprocal && i == 0) mn = INFINITY; /* the asymptote belongs to this panel */
+        if (reciprocal && i == 0) mn = (double)INFINITY; /* the asymptote belongs to this panel */
         ce_molar molar = {.mn_g_mol = mn, .mw_g_mol = mn, .chain_ends = 2.0};
         ce_band band;
         if (ce_fit_band(r->fit, &molar, 0.0, 1, 0.0, &band) != CE_OK) continue;
@@ -80,7 +80,7 @@ static size_t put_unknowns(FILE *to, const ce_estimate_result *r, extent x)
             a->mn.bound == CE_UNDETERMINED)
             continue;
         const ce_estimate *e = &a->mn;
-        double high = isfinite(e->high_g_mol) ? e->high_g_mol : INFINITY;
+        double high = isfinite(e->high_g_mol) ? e->high_g_mol : (double)INFINITY;
         bool on = isfinite(e->mn_g_mol) && e->mn_g_mol < x.high_mn;
         ce_plot_number(to, ce_degC_from_K(e->tg_K));
         ce_plot_number(to, on ? e->mn_g_mol / 1000.0 : (double)NAN);
