@@ -219,8 +219,8 @@ static void robust(ce_fitting *f, ce_psi psi, double *theta, double *weight, dou
 {
     ce_fit *fit = f->fit;
     memcpy(theta, f->eiv.theta, sizeof f->eiv.theta);
-    ce_status status = ce_robust_solve(f->eiv.nls, ce_eiv_residuals, &f->eiv, psi, theta, weight,
-                                       scale, &f->eiv.options);
+    ce_status status =
+        ce_robust_solve(f->eiv.nls, ce_eiv_residuals, &f->eiv, psi, theta, weight, scale);
     for (size_t j = 0; j < fit->n_points; j++) {
         double w = 0, runs = 0;
         for (size_t i = 0; i < f->n; i++)

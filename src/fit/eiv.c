@@ -1,7 +1,6 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
 #include "fit/eiv.h"
 
-#include <float.h>
 #include <math.h>
 #include <stdlib.h>
 #include <string.h>
@@ -47,7 +46,8 @@ static double nearest(const ce_eiv *eiv, const double *theta, const ce_eiv_point
         zeta = next;
         *jet = trial;
         here = there;
-        if (!(moved > 2 * DBL_EPSILON * fabs(zeta))) break;
+        /* Newton converges quadratically: after this step only rounding is left. */
+        if (!(moved > 1e-10 * fabs(zeta))) break;
     }
     return zeta;
 }

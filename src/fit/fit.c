@@ -52,7 +52,7 @@ ce_fit_options ce_fit_options_default(void)
                             .diagnose = true,
                             .seed = 1,
                             .max_iterations = 200,
-                            .tolerance = 1e-12};
+                            .tolerance = 1e-7};
 }
 
 static ce_status check_options(const ce_fit_options *o, ce_error *err)

@@ -263,3 +263,17 @@ ce_status ce_nls_solve(ce_nls *nls, ce_nls_function fn, void *context, double *t
     take_results(nls);
     return CE_OK;
 }
+
+ce_status ce_nls_step(ce_nls *nls, ce_nls_function fn, void *context, double *theta)
+{
+    ce_nls_work *w = nls->work;
+    w->fn = fn;
+    w->context = context;
+    w->have = false;
+    evaluate(nls, theta);
+    nls->sum = sum_of_squares(nls);
+    if (!isfinite(nls->sum) || !decompose(nls)) return CE_E_NOFIT;
+    (void)gauss_newton(nls);
+    for (size_t j = 0; j < nls->p; j++) theta[j] += w->step[j];
+    return CE_OK;
+}

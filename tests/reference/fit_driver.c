@@ -24,8 +24,8 @@ static int read_standard(ce_standard *s, double *tg, double *tg_u)
 {
     double runs, u;
     if (!read_number(&s->molar.mn_g_mol) || !read_number(&s->mn_u_g_mol) ||
-        !read_number(&s->molar.mw_g_mol) || !read_number(&s->molar.chain_ends) || !read_number(&u) ||
-        !read_number(&runs) || !(runs >= 1 && runs <= MAX_RUNS))
+        !read_number(&s->molar.mw_g_mol) || !read_number(&s->molar.chain_ends) ||
+        !read_number(&u) || !read_number(&runs) || !(runs >= 1 && runs <= MAX_RUNS))
         return 0;
     s->n = (size_t)runs;
     for (size_t i = 0; i < s->n; i++) {

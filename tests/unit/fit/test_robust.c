@@ -10,9 +10,8 @@
 static void robust(const curve *c, ce_psi psi, double *b, double *w, double *scale)
 {
     ce_nls *fit = fit_curve(c, b);
-    ce_nls_options o = CE_NLS_DEFAULT;
     curve copy = *c;
-    assert_int_equal(ce_robust_solve(fit, curve_residuals, &copy, psi, b, w, scale, &o), CE_OK);
+    assert_int_equal(ce_robust_solve(fit, curve_residuals, &copy, psi, b, w, scale), CE_OK);
     ce_nls_free(fit);
 }
 
