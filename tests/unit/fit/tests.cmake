@@ -1,1 +1,1 @@
-ce_unit_test(fit flory_fox nls eiv relation stats robust refuse)
+ce_unit_test(fit flory_fox nls eiv relation stats robust refuse fit)
