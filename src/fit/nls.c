@@ -205,7 +205,8 @@ static bool polish(ce_nls *nls, double *theta)
         for (size_t j = 0; j < p; j++) w->trial[j] = theta[j] + w->step[j];
         evaluate(nls, w->trial);
         double sum = sum_of_squares(nls);
-        if (!(sum <= nls->sum * (1 + 1e-10))) break;
+        /* Of a nearly exact fit the sum is rounding, and a tiny step must not be judged by it. */
+        if (!(sum <= nls->sum * (1 + 1e-10)) && !(size < 1e-7 && isfinite(sum))) break;
         memcpy(theta, w->trial, p * sizeof *theta);
         nls->sum = sum;
         last = size;
