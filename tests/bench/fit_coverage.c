@@ -1,5 +1,5 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later
- * Do the 95 % intervals of Tg_inf and K hold? Simulated series of known truth: standards evenly spaced
+ * Do the 95 % intervals of Tg_inf and the second parameter hold? Simulated series of known truth: standards evenly spaced
  * in log Mn from 2 to 300 kg/mol, three runs each of 0.5 K, K = 1.8e5 K g/mol, certified Mn = true Mn
  * (1 + r normal), common to the runs. usage: fit_coverage [SERIES] [SEED]; prints a table. */
 #include "base/counter_rng.h"
@@ -11,7 +11,11 @@
 #include <string.h>
 
 enum { MAX_K = 8, RUNS = 3 };
-static const double tg_inf = 388, slope = 1.8e5, run_sd = 0.5;
+static const double run_sd = 0.5;
+static const double truth[CE_RELATIONS][CE_MAX_PARAMETERS] = {
+    [CE_FLORY_FOX] = {388, 1.8e5},         [CE_UEBERREITER_KANIG] = {388, 500},
+    [CE_ODRISCOLL_SANAYEI] = {388, 1.4e4}, [CE_OGAWA] = {388, 1.8e5},
+    [CE_LOG_PLATEAU] = {388, 70, 30000},   [CE_LOG_THREE] = {388, 120, 45, 6000, 60000}};
 
 typedef struct {
     const char *name;
@@ -37,7 +41,9 @@ static bool one(const scenario *c, ce_counter_rng *rng, int hit[2], double width
         double mn = standard_mn(c->k, i),
                stated = mn * (1 + c->r_true * ce_counter_rng_normal(rng));
         for (size_t j = 0; j < c->runs; j++)
-            tg[i][j] = tg_inf - slope / mn + run_sd * ce_counter_rng_normal(rng);
+            tg[i][j] =
+                ce_relation_tg(c->relation, truth[c->relation], &(ce_molar){mn, 1.2 * mn, 2}) +
+                run_sd * ce_counter_rng_normal(rng);
         s[i] = (ce_standard){.name = "S",
                              .molar = {stated, (double)NAN, 2},
                              .mn_u_g_mol = c->r_stated * stated,
@@ -51,8 +57,8 @@ static bool one(const scenario *c, ce_counter_rng *rng, int hit[2], double width
     ce_fit fit;
     if (ce_fit_relation(c->k, s, &o, &fit, NULL) != CE_OK) return false;
     for (int p = 0; p < 2; p++) {
-        double truth = p == 0 ? tg_inf : slope;
-        hit[p] = fit.parameter[p].low <= truth && truth <= fit.parameter[p].high;
+        double want = truth[c->relation][p];
+        hit[p] = fit.parameter[p].low <= want && want <= fit.parameter[p].high;
         width[p] = fit.parameter[p].high - fit.parameter[p].low;
     }
     *excess = fit.excess_r > 0 || fit.excess_tau_K > 0;
@@ -76,7 +82,7 @@ static void run(const scenario *c, size_t number, long series, uint64_t seed)
         excesses += excess;
     }
     double n = (double)(series - failed);
-    printf("%-46s %zu x %zu  %.4f  %.4f  %8.3f %9.0f  %.3f %ld\n", c->name, c->k, c->runs,
+    printf("%-46s %zu x %zu  %.4f  %.4f  %8.3f %9.4g  %.3f %ld\n", c->name, c->k, c->runs,
            (double)hits[0] / n, (double)hits[1] / n, widths[0], widths[1], (double)excesses / n,
            failed);
 }
@@ -98,10 +104,16 @@ int main(int argc, char **argv)
         {"Mn 5 %, not stated", CE_FLORY_FOX, 8, 3, .05, none, CE_SCATTER_AUTO},
         {"Mn 5 %, ordinary least squares on the runs", CE_FLORY_FOX, 8, 3, .05, .05,
          CE_SCATTER_RESIDUALS},
+        {"ueberreiter-kanig, Mn exact", CE_UEBERREITER_KANIG, 8, 3, 0, 0, CE_SCATTER_AUTO},
+        {"ueberreiter-kanig, Mn 5 %, stated", CE_UEBERREITER_KANIG, 8, 3, .05, .05,
+         CE_SCATTER_AUTO},
+        {"odriscoll-sanayei, Mn 5 %, stated", CE_ODRISCOLL_SANAYEI, 8, 3, .05, .05,
+         CE_SCATTER_AUTO},
+        {"log-plateau, Mn 5 %, stated", CE_LOG_PLATEAU, 8, 3, .05, .05, CE_SCATTER_AUTO},
     };
     printf("%ld series each, seed %llu; coverage of the 95 %% intervals\n", series,
            (unsigned long long)seed);
-    printf("%-46s samples Tg_inf   K       width/K   width/K g/mol  excess failed\n", "scenario");
+    printf("%-46s samples Tg_inf  second     width     width  excess failed\n", "scenario");
     for (size_t i = 0; i < sizeof all / sizeof *all; i++) run(&all[i], i, series, seed);
     return EXIT_SUCCESS;
 }
