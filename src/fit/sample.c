@@ -90,6 +90,14 @@ static ce_status check_count(const ce_fitting *f, ce_error *err)
                        "%zu standard%s, but %s has %zu parameters and needs at least %zu with "
                        "different molar masses; add standards",
                        f->n_standards, f->n_standards == 1 ? "" : "s", name, f->model->p, need);
+    bool rings = true;
+    for (size_t j = 0; j < f->n_standards; j++) rings &= f->standard[j].molar.chain_ends == 0;
+    if (rings && distinct == 1)
+        return ce_fail(
+            err, CE_E_NOFIT,
+            "no standard has a chain end, so %s cannot depend on the molar mass; add linear "
+            "standards",
+            name);
     if (distinct == 1)
         return ce_fail(
             err, CE_E_NOFIT,

@@ -67,7 +67,7 @@ static void every_relation_finds_its_truth(void **state)
                 ce_fit_free(&f);
             }
             /* 99 % intervals: at most 5 % of them may miss. */
-            if (inside < 0.95 * (double)all)
+            if ((double)inside < 0.95 * (double)all)
                 print_error("%s, r %g: %zu of %zu\n", ce_relation_name((ce_relation)rel), r, inside,
                             all);
             assert_true((double)inside >= 0.95 * (double)all);

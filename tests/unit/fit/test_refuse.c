@@ -97,7 +97,7 @@ static void too_few(void **state)
     REFUSED(8, s, &o, CE_E_DOMAIN, "'S1' has no Mw");
     /* Rings alone: no chain ends, nothing to fit. */
     for (size_t i = 0; i < 8; i++) s[i].molar.chain_ends = 0;
-    REFUSED(8, s, NULL, CE_E_NOFIT, "same");
+    REFUSED(8, s, NULL, CE_E_NOFIT, "no standard has a chain end");
 }
 
 static void scatter(void **state)
