@@ -132,9 +132,9 @@ static ce_status common_shifts(ce_fitting *f, const double *bread)
 {
     ce_fit *fit = f->fit;
     const ce_fit_options *o = &fit->options;
-    double *change = calloc(3 * f->n, sizeof *change), *mn = change, *tg = mn + f->n,
-           *rate = tg + f->n;
+    double *change = f->n == 0 ? NULL : calloc(3 * f->n, sizeof *change);
     if (change == NULL) return CE_E_NOMEM;
+    double *mn = change, *tg = change + f->n, *rate = change + 2 * f->n;
     for (size_t i = 0; i < f->n; i++) {
         ce_jet jet;
         (void)ce_eiv_variance(&f->eiv, i, &jet);
