@@ -128,9 +128,10 @@ static ce_status include_excess(ce_fitting *f, ce_error *err)
     }
     if (automatic && f->fit->excess_r == 0 && f->fit->excess_tau_K == 0) excess = CE_EXCESS_NONE;
     f->fit->options.excess = excess;
-    for (size_t i = 0; i < f->n; i++)
-        f->fit->point[f->sample[i]].mn_u_g_mol =
-            f->point[i].sd_z / f->point[i].z * f->fit->point[f->sample[i]].molar.mn_g_mol;
+    for (size_t i = 0; f->fit->excess_r > 0 && i < f->n; i++) {
+        ce_fit_point *q = &f->fit->point[f->sample[i]];
+        q->mn_u_g_mol = fmax(f->fit->excess_r, stated_r(f, i)) * q->molar.mn_g_mol;
+    }
     return excess == CE_EXCESS_NONE ? CE_OK : ce_eiv_refit(&f->eiv, err);
 }
 
