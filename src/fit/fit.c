@@ -225,11 +225,14 @@ static ce_status parameters(ce_fitting *f, ce_error *err)
     }
     /* The profiles moved the adjusted points. */
     ce_eiv_residuals(f->eiv.theta, f->eiv.nls->r, f->eiv.nls->J, &f->eiv);
-    if (fit->p > 1) {
-        const ce_parameter *k = &fit->parameter[1];
-        double t = ce_student_factor(fit->options.level, k->nu);
-        fit->slope_significance = t * t * fit->covariance[fit->p + 1] / (k->value * k->value);
-    }
+    /* How far the interval reaches towards zero. What is common to all standards scales the second
+     * parameter and cannot make it zero: left out where the interval is symmetric. */
+    const ce_parameter *k = &fit->parameter[1];
+    double reach = k->value > 0 ? k->value - k->low : k->high - k->value;
+    if (f->model->linear)
+        reach = ce_student_factor(fit->options.level, parameter_nu(fit, 1, 0)) *
+                sqrt(fit->covariance[fit->p + 1]);
+    fit->slope_significance = reach * reach / (k->value * k->value);
     return CE_OK;
 }
 

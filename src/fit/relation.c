@@ -204,7 +204,7 @@ static const relation_entry table[CE_RELATIONS] = {
                    .abscissa = half_ends_z}},
     [CE_UEBERREITER_KANIG] =
         {.name = "ueberreiter-kanig",
-         .formula = "Tg = Tg_inf/(1 + C/Mn), i.e. 1/Tg = 1/Tg_inf + (C/Tg_inf)/Mn",
+         .formula = "Tg = Tg_inf/(1 + C/Mn)",
          .validity =
              "as Flory-Fox; 1/Tg is linear in 1/Mn, so Tg stays above 0 K at low molar mass",
          .source = "K. Ueberreiter and G. Kanig, J. Colloid Sci. 7 (1952) 569",
