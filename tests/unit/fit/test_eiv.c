@@ -241,12 +241,46 @@ static void jacobian_is_the_derivative(void **state)
     }
 }
 
+/* Kinks included, the squared residual is the least over all true z: none on a fine grid is less. */
+static void residual_is_the_shortest_distance(void **state)
+{
+    (void)state;
+    for (unsigned rel = 0; rel < CE_RELATIONS; rel++)
+        for (uint64_t seed = 1; seed <= 10; seed++) {
+            ce_eiv_point p[10];
+            size_t n = make_points((ce_relation)rel, seed, 0.15, p);
+            const ce_model *model = ce_relation_model((ce_relation)rel);
+            ce_eiv eiv;
+            ce_nls_options o = CE_NLS_DEFAULT;
+            double r[10], J[60];
+            assert_int_equal(ce_eiv_new(&eiv, model, n, p, &o), CE_OK);
+            ce_eiv_residuals(truth[rel], r, J, &eiv);
+            for (size_t i = 0; i < n; i++) {
+                double least = (double)INFINITY;
+                for (int k = -4000; k <= 4000; k++) {
+                    double zeta = p[i].z + p[i].sd_z * k / 1000.0;
+                    ce_jet jet;
+                    model->eval(model, truth[rel], zeta, &p[i].chain, &jet);
+                    double e = p[i].y - jet.value, d = (p[i].z - zeta) / p[i].sd_z;
+                    least = fmin(least, e * e / p[i].var_y + d * d);
+                }
+                assert_true(r[i] * r[i] <= least * (1 + 1e-9) + 1e-12);
+                assert_close(r[i] * r[i], least, 0.02 * least + 0.02);
+            }
+            ce_eiv_free(&eiv);
+        }
+}
+
 int main(void)
 {
     const struct CMUnitTest tests[] = {
-        cmocka_unit_test(pearson_york),          cmocka_unit_test(pearson_odrpack),
-        cmocka_unit_test(pearson_special_cases), cmocka_unit_test(iso_ts_28037),
-        cmocka_unit_test(reduced_is_full),       cmocka_unit_test(jacobian_is_the_derivative),
+        cmocka_unit_test(pearson_york),
+        cmocka_unit_test(pearson_odrpack),
+        cmocka_unit_test(pearson_special_cases),
+        cmocka_unit_test(iso_ts_28037),
+        cmocka_unit_test(reduced_is_full),
+        cmocka_unit_test(jacobian_is_the_derivative),
+        cmocka_unit_test(residual_is_the_shortest_distance),
     };
     return cmocka_run_group_tests_name("fit/eiv", tests, NULL, NULL);
 }
