@@ -157,7 +157,7 @@ size_t ce_starts_log_plateau(const ce_model *self, size_t n, const ce_eiv_point 
     for (size_t gap = 1; gap + 1 < s.n; gap++) {
         candidate here = {.sum = (double)INFINITY};
         for (int i = 0; i < STEPS; i++) {
-            double c[3], at = grid(s.x[gap], s.x[gap + 1], i), sum = hinge_fit(&s, 1, &at, c);
+            double c[3] = {0}, at = grid(s.x[gap], s.x[gap + 1], i), sum = hinge_fit(&s, 1, &at, c);
             if (sum < here.sum) here = (candidate){sum, {c[0], c[1], pow(10, at)}};
         }
         if (isfinite(here.sum)) keep(best, &found, &here);
