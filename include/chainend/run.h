@@ -20,9 +20,10 @@ extern "C" {
 typedef enum {
     CE_SIGNAL_POWER,          /* heat flow, mW; the sample mass is not known    */
     CE_SIGNAL_SPECIFIC_POWER, /* heat flow per sample mass, W/g                 */
-    CE_SIGNAL_HEAT_CAPACITY   /* specific heat capacity, J/(g K)                */
+    CE_SIGNAL_HEAT_CAPACITY,  /* specific heat capacity, J/(g K)                */
+    CE_SIGNAL_UNSTATED        /* heat flow in a unit the file does not state    */
 } ce_signal;
-/* "mW", "W/g" or "J/(g K)". */
+/* "mW", "W/g", "J/(g K)" or "unit not stated". */
 CE_API const char *ce_signal_unit(ce_signal signal);
 
 typedef enum { CE_SIGN_AUTO, CE_SIGN_ENDO_UP, CE_SIGN_EXO_UP } ce_sign;

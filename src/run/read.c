@@ -1,293 +1,333 @@
-/* SPDX-License-Identifier: GPL-3.0-or-later */
-#include <chainend/run.h>
+/* SPDX-License-Identifier: GPL-3.0-or-later
+ * A run file from its bytes to a run: the steps in order, sign and mass, and what was understood. */
+#include "run/reader.h"
 
-#include "run/run_internal.h"
-#include "run/segments.h"
-#include "run/words.h"
-#include "text/dialect.h"
-#include "text/header.h"
-#include "text/load.h"
-#include "text/number.h"
-#include "text/split.h"
+#include "base/order.h"
 
 #include <math.h>
-#include <stdint.h>
-#include <stdio.h>
+#include <stdarg.h>
 #include <stdlib.h>
 #include <string.h>
 
-enum { TIME, TEMPERATURE, SIGNAL, ROLES };
-
-typedef struct {
-    ce_run *run;
-    const ce_run_options *o;
-    const ce_text *text;
-    ce_dialect dialect;
-    ce_splitter split;
-    ce_error *err;
-    /* header */
-    ce_header *column;
-    size_t n_columns, header_line;
-    size_t at[ROLES];
-    const ce_unit *unit[ROLES];
-    ce_sign sign;
-    size_t sign_line;
-    /* data */
-    size_t room, n;
-    double *value[ROLES];
-    size_t *line; /* of each point */
-} reader;
-
-static ce_status fail(reader *r, ce_status st, size_t line, size_t column, const char *what)
+ce_status ce_reader_fail(ce_reader *r, ce_status st, size_t line, size_t column, const char *fmt,
+                         ...)
 {
-    return ce_fail_at(r->err, st, r->run->name, line, column, "%s", what);
+    char text[sizeof((ce_error *)NULL)->message];
+    va_list ap;
+    va_start(ap, fmt);
+    (void)vsnprintf(text, sizeof text, fmt, ap);
+    va_end(ap);
+    return ce_fail_at(r->err, st, r->run->name, line, column, "%s", text);
 }
 
-/* ---- header ------------------------------------------------------------------------------- */
-
-static ce_status set_columns(reader *r, size_t line)
+ce_status ce_reader_no_memory(ce_reader *r)
 {
-    free(r->column);
-    r->column = calloc(r->split.n, sizeof *r->column);
-    if (r->column == NULL) return fail(r, CE_E_NOMEM, 0, 0, "out of memory");
-    r->n_columns = r->split.n;
-    r->header_line = line;
-    for (size_t i = 0; i < r->n_columns; i++) {
-        char clean[CE_HEADER_NAME];
-        ce_sign sign = ce_sign_of(r->split.cell[i].at, clean, sizeof clean);
-        if (sign != CE_SIGN_AUTO) {
-            r->sign = sign;
-            r->sign_line = line;
+    return ce_reader_fail(r, CE_E_NOMEM, 0, 0, "out of memory");
+}
+
+/* ---- signal: mass and sign ------------------------------------------------------------------ */
+
+#define PHYSICS_POINTS 2001
+
+/* Median of the signal of a segment within [low, high]. */
+static double level_within(const ce_run *run, const ce_segment *s, double low, double high,
+                           double *scratch)
+{
+    size_t n = 0, stride = s->n / (PHYSICS_POINTS - 1) + 1;
+    for (size_t i = s->first; i < s->first + s->n; i += stride)
+        if (run->temperature_K[i] >= low && run->temperature_K[i] <= high)
+            scratch[n++] = run->signal[i];
+    return n < 5 ? (double)NAN : ce_median(scratch, n);
+}
+
+/* A sample takes up heat on heating and gives it off on cooling, so over the same temperatures the
+ * heat flow of a heating lies above that of a cooling when endothermic is up. 1 endo up, -1 exo up,
+ * 0 not to be told. Common practice. */
+static int sign_from_physics(const ce_run *run)
+{
+    double scratch[PHYSICS_POINTS], vote = 0.0;
+    if (run->kind == CE_SIGNAL_HEAT_CAPACITY) return 0;
+    for (size_t i = 0; i < run->n_segments; i++)
+        for (size_t k = 0; k < run->n_segments; k++) {
+            const ce_segment *h = &run->segment[i], *c = &run->segment[k];
+            if (h->kind != CE_HEATING || c->kind != CE_COOLING) continue;
+            double low = fmax(h->low_K, c->low_K), high = fmin(h->high_K, c->high_K);
+            double margin = 0.2 * (high - low);
+            if (!(high - low > 10.0)) continue;
+            double d = level_within(run, h, low + margin, high - margin, scratch) -
+                       level_within(run, c, low + margin, high - margin, scratch);
+            if (!isnan(d)) vote += d > 0.0 ? 1.0 : d < 0.0 ? -1.0 : 0.0;
         }
-        ce_header_split(clean, strlen(clean), &r->column[i]);
-    }
-    return CE_OK;
+    return vote > 0.0 ? 1 : vote < 0.0 ? -1 : 0;
 }
 
-static bool set_units(reader *r)
+static const char *sign_words(ce_sign sign)
 {
-    size_t filled = 0;
-    for (size_t i = 0; i < r->split.n; i++) {
-        const ce_unit *u;
-        if (r->split.cell[i].n == 0) continue;
-        if (!ce_header_is_unit(r->split.cell[i], &u)) return false;
-        filled++;
-    }
-    for (size_t i = 0; filled > 0 && i < r->split.n && i < r->n_columns; i++) {
-        const ce_unit *u = NULL;
-        if (r->split.cell[i].n == 0 || !ce_header_is_unit(r->split.cell[i], &u)) continue;
-        r->column[i].unit = u;
-        (void)snprintf(r->column[i].unit_text, sizeof r->column[i].unit_text, "%.*s",
-                       (int)(r->split.cell[i].n < 60 ? r->split.cell[i].n : 60),
-                       r->split.cell[i].at);
-    }
-    return filled > 0;
+    return sign == CE_SIGN_EXO_UP ? "exo up" : "endo up";
 }
 
-static void find_roles(reader *r)
-{
-    for (size_t k = 0; k < ROLES; k++) r->at[k] = SIZE_MAX;
-    for (size_t i = 0; i < r->n_columns; i++) {
-        ce_meaning m = ce_meaning_of(r->column[i].name, r->column[i].unit);
-        size_t k = m == CE_MEANS_TIME                                       ? TIME
-                   : m == CE_MEANS_TEMPERATURE                              ? TEMPERATURE
-                   : m == CE_MEANS_HEAT_FLOW || m == CE_MEANS_HEAT_CAPACITY ? SIGNAL
-                                                                            : ROLES;
-        if (k < ROLES && r->at[k] == SIZE_MAX) r->at[k] = i;
-    }
-}
-
-static ce_status check_role(reader *r, size_t k, const char *what, const char *option, bool needed)
-{
-    if (r->at[k] == SIZE_MAX) {
-        if (!needed) return CE_OK;
-        return ce_fail_at(r->err, CE_E_SYNTAX, r->run->name, r->header_line, 0,
-                          "no column holds the %s: name it in the header, or with --%s-column",
-                          what, option);
-    }
-    const ce_header *c = &r->column[r->at[k]];
-    const char *given = k == TIME          ? r->o->time_unit
-                        : k == TEMPERATURE ? r->o->temperature_unit
-                                           : r->o->signal_unit;
-    r->unit[k] = given != NULL ? ce_unit_find(given, strlen(given)) : c->unit;
-    if (r->unit[k] == NULL)
-        return ce_fail_at(
-            r->err, CE_E_SYNTAX, r->run->name, r->header_line, r->at[k] + 1,
-            c->unit_text[0] == '\0' && given == NULL
-                ? "column '%.60s' has no unit: say it with --%s-unit"
-                : "column '%.60s' has a unit that is not known: say it with --%s-unit",
-            c->name, option);
-    return ce_run_set_fact(r->run,
-                           k == TIME          ? "time column"
-                           : k == TEMPERATURE ? "temperature column"
-                                              : "signal column",
-                           CE_ORIGIN_STATED, r->header_line,
-                           k == TIME          ? "--time-column"
-                           : k == TEMPERATURE ? "--temperature-column"
-                                              : "--signal-column",
-                           "%zu '%s', %s", r->at[k] + 1, c->name, r->unit[k]->name);
-}
-
-/* ---- preamble ----------------------------------------------------------------------------- */
-
-static ce_status read_preamble_line(reader *r, const char *p, const char *end, size_t line)
-{
-    while (p < end && (*p == '#' || *p == ' ')) p++;
-    char text[400];
-    (void)snprintf(text, sizeof text, "%.*s", (int)(end - p < 399 ? end - p : 399), p);
-    ce_sign sign = ce_sign_of(text, NULL, 0);
-    if (sign != CE_SIGN_AUTO) {
-        r->sign = sign;
-        r->sign_line = line;
-    }
-    char *mark = strpbrk(text, r->dialect.delimiter == ' ' ? ":=" : ":=;\t,|");
-    if (mark == NULL) return CE_OK;
-    char *value = mark + 1 + strspn(mark + 1, " \t");
-    *mark = '\0';
-    if (ce_run_add_entry(r->run, text, strlen(text), value, strlen(value), line) != CE_OK)
-        return fail(r, CE_E_NOMEM, 0, 0, "out of memory");
-    if (ce_key_of(text) != CE_KEY_MASS || !isnan(r->run->mass_g)) return CE_OK;
-    size_t n = strspn(value, "0123456789.,");
-    double x;
-    const ce_unit *u = NULL;
-    char *unit = value + n + strspn(value + n, "; \t|,");
-    char *unit_end = unit + strcspn(unit, ";\t|,");
-    *unit_end = '\0';
-    while (n > 0 && (value[n - 1] == ',')) n--;
-    if (ce_parse_number(value, n, r->dialect.decimal, &x) && x > 0.0)
-        u = ce_unit_find(unit, strlen(unit));
-    if (u == NULL || u->dimension != CE_DIM_MASS) return CE_OK;
-    r->run->mass_g = ce_to_internal(u, x);
-    return ce_run_set_fact(r->run, "sample mass", CE_ORIGIN_STATED, line, "--mass", "%.4g mg",
-                           1000.0 * r->run->mass_g);
-}
-
-/* ---- data --------------------------------------------------------------------------------- */
-
-static ce_status grow(reader *r)
-{
-    if (r->n < r->room) return CE_OK;
-    if (r->n >= CE_MAX_POINTS) return fail(r, CE_E_LIMIT, 0, 0, "too many points");
-    size_t want = r->room == 0 ? 1024 : 2 * r->room;
-    for (size_t k = 0; k < ROLES; k++) {
-        double *p = reallocarray(r->value[k], want, sizeof *p);
-        if (p == NULL) return fail(r, CE_E_NOMEM, 0, 0, "out of memory");
-        r->value[k] = p;
-    }
-    size_t *l = reallocarray(r->line, want, sizeof *l);
-    if (l == NULL) return fail(r, CE_E_NOMEM, 0, 0, "out of memory");
-    r->line = l;
-    r->room = want;
-    return CE_OK;
-}
-
-static ce_status read_row(reader *r, size_t line)
-{
-    ce_status st = grow(r);
-    for (size_t k = 0; k < ROLES && st == CE_OK; k++) {
-        if (r->at[k] == SIZE_MAX) continue;
-        double x;
-        if (r->at[k] >= r->split.n || r->split.cell[r->at[k]].n == 0)
-            return ce_fail_at(r->err, CE_E_SYNTAX, r->run->name, line, r->at[k] + 1,
-                              "the row has no value for column '%.60s'", r->column[r->at[k]].name);
-        ce_span c = r->split.cell[r->at[k]];
-        if (!ce_parse_number(c.at, c.n, r->dialect.decimal, &x))
-            return ce_fail_at(r->err, CE_E_SYNTAX, r->run->name, line, r->at[k] + 1,
-                              "cannot read '%.*s' as a number", (int)(c.n < 40 ? c.n : 40), c.at);
-        r->value[k][r->n] = ce_to_internal(r->unit[k], x);
-    }
-    if (st == CE_OK) r->line[r->n++] = line;
-    return st;
-}
-
-static ce_status settle_columns(reader *r)
-{
-    if (r->column == NULL)
-        return fail(r, CE_E_SYNTAX, 1, 0,
-                    "no header line names the columns: say them with --temperature-column, "
-                    "--signal-column and --time-column");
-    find_roles(r);
-    ce_status st = check_role(r, TEMPERATURE, "temperature", "temperature", true);
-    if (st == CE_OK) st = check_role(r, SIGNAL, "heat flow", "signal", true);
-    if (st == CE_OK) st = check_role(r, TIME, "time", "time", isnan(r->o->rate_K_min));
-    return st;
-}
-
-static ce_status read_lines(reader *r)
-{
-    size_t line = 1, data = 0;
-    for (const char *p = r->text->begin; p < r->text->end;) {
-        size_t here = line;
-        const char *begin = p, *end = ce_line_end(p, r->text->end);
-        ce_row_kind look = ce_row_look(p, end, r->dialect.delimiter, r->dialect.decimal, NULL);
-        const char *q = begin;
-        while (q < end && (*q == '#' || *q == ' ')) q++;
-        ce_status st = ce_split(&r->split, q, r->text->end, &p, &line, r->err);
-        if (st != CE_OK) return st;
-        if (look == CE_ROW_BLANK || r->split.n == 0) continue;
-        if (look == CE_ROW_NUMBERS || (data > 0 && look == CE_ROW_PART)) {
-            if (data == 0) st = settle_columns(r);
-            if (st == CE_OK) st = read_row(r, here);
-            data++;
-        } else if (data > 0)
-            st = fail(r, CE_E_SYNTAX, here, 1, "text among the rows of numbers");
-        else if (r->column == NULL || !set_units(r)) {
-            st = read_preamble_line(r, begin, end, here);
-            if (st == CE_OK && r->split.n >= 2) st = set_columns(r, here);
-        }
-        if (st != CE_OK) return st;
-    }
-    return data >= 10 ? CE_OK
-                      : fail(r, CE_E_SYNTAX, line, 0,
-                             data == 0 ? "the file holds no rows of numbers"
-                                       : "the file holds fewer than 10 rows of numbers");
-}
-
-/* A filler before the first measurement: 0 °C, no heat flow, then the start of the programme. */
-static void drop_filler(reader *r)
-{
-    if (r->n < 3 || r->value[SIGNAL][0] != 0.0 ||
-        fabs(r->value[TEMPERATURE][1] - r->value[TEMPERATURE][0]) < 10.0 ||
-        fabs(r->value[TEMPERATURE][2] - r->value[TEMPERATURE][1]) > 1.0)
-        return;
-    for (size_t k = 0; k < ROLES; k++)
-        memmove(r->value[k], r->value[k] + 1, (r->n - 1) * sizeof(double));
-    memmove(r->line, r->line + 1, (r->n - 1) * sizeof *r->line);
-    r->n--;
-    (void)ce_run_warn(r->run, CE_NOTE, r->line[0] - 1, 0, "first row is a filler: left out");
-}
-
-static ce_status hand_over(reader *r)
+static ce_status settle_sign(ce_reader *r)
 {
     ce_run *run = r->run;
-    if (!isnan(r->o->mass_g)) run->mass_g = r->o->mass_g;
-    ce_sign sign = r->o->sign != CE_SIGN_AUTO ? r->o->sign : r->sign;
-    run->sign_origin = r->o->sign != CE_SIGN_AUTO ? CE_ORIGIN_OPTION
-                       : r->sign != CE_SIGN_AUTO  ? CE_ORIGIN_STATED
-                                                  : CE_ORIGIN_DEFAULT;
-    run->kind = r->unit[SIGNAL]->dimension == CE_DIM_HEAT_CAPACITY    ? CE_SIGNAL_HEAT_CAPACITY
-                : r->unit[SIGNAL]->dimension == CE_DIM_SPECIFIC_POWER ? CE_SIGNAL_SPECIFIC_POWER
-                                                                      : CE_SIGNAL_POWER;
-    double scale = sign == CE_SIGN_EXO_UP ? -1.0 : 1.0;
-    run->flipped = scale < 0.0;
-    if (run->kind == CE_SIGNAL_POWER && !isnan(run->mass_g)) {
-        scale *= 1e-3 / run->mass_g;
-        run->kind = CE_SIGNAL_SPECIFIC_POWER;
+    const ce_group *g = &r->group[0];
+    ce_sign header = r->column[g->signal].sign, sign = r->o->sign;
+    size_t line = 0;
+    const char *why = "";
+    run->sign_origin = CE_ORIGIN_OPTION;
+    if (sign == CE_SIGN_AUTO) {
+        run->sign_origin = CE_ORIGIN_STATED;
+        if (header != CE_SIGN_AUTO && r->sign != CE_SIGN_AUTO && header != r->sign)
+            return ce_reader_fail(r, CE_E_SYNTAX, r->header_line, g->signal + 1,
+                                  "the header says %s, line %zu says %s: give --sign",
+                                  sign_words(header), r->sign_line, sign_words(r->sign));
+        sign = header != CE_SIGN_AUTO ? header : r->sign;
+        line = header != CE_SIGN_AUTO ? r->header_line : r->sign_line;
     }
-    for (size_t i = 0; i < r->n; i++) r->value[SIGNAL][i] *= scale;
-    run->n = r->n;
-    run->temperature_K = r->value[TEMPERATURE];
-    run->signal = r->value[SIGNAL];
-    r->value[TEMPERATURE] = r->value[SIGNAL] = NULL;
-    if (r->at[TIME] != SIZE_MAX) {
-        run->time_s = r->value[TIME];
-        r->value[TIME] = NULL;
+    if (sign == CE_SIGN_AUTO && run->kind == CE_SIGNAL_HEAT_CAPACITY) {
+        sign = CE_SIGN_ENDO_UP;
+        line = r->units_line != 0 ? r->units_line : r->header_line;
+        why = ", as every heat capacity";
     }
-    ce_status st = ce_run_set_fact(run, "sign of heat flow", run->sign_origin, r->sign_line,
-                                   "--sign", "%s", scale < 0.0 ? "exo up" : "endo up");
-    if (st == CE_OK) st = ce_run_find_segments(run, NULL, 0, r->o->rate_K_min, r->err);
-    for (size_t i = 0; i < run->n_segments; i++)
-        run->segment[i].line = r->line[run->segment[i].first];
+    if (sign == CE_SIGN_AUTO) {
+        int physics = sign_from_physics(run);
+        run->sign_origin = physics == 0 ? CE_ORIGIN_DEFAULT : CE_ORIGIN_GUESSED;
+        sign = physics < 0 ? CE_SIGN_EXO_UP : CE_SIGN_ENDO_UP;
+        why = physics == 0 ? ", assumed" : ", as heating and cooling differ";
+    }
+    run->flipped = sign == CE_SIGN_EXO_UP;
+    for (size_t i = 0; run->flipped && i < run->n; i++) run->signal[i] = -run->signal[i];
+    if (ce_run_set_fact(run, "sign of heat flow", run->sign_origin, line, "--sign", "%s%s",
+                        sign_words(sign), why) != CE_OK)
+        return ce_reader_no_memory(r);
+    return CE_OK;
+}
+
+static ce_status scale_signal(ce_reader *r)
+{
+    ce_run *run = r->run;
+    const ce_unit *u = r->signal_unit;
+    run->kind = u == NULL                               ? CE_SIGNAL_UNSTATED
+                : u->dimension == CE_DIM_HEAT_CAPACITY  ? CE_SIGNAL_HEAT_CAPACITY
+                : u->dimension == CE_DIM_SPECIFIC_POWER ? CE_SIGNAL_SPECIFIC_POWER
+                                                        : CE_SIGNAL_POWER;
+    if (!isnan(r->o->mass_g)) {
+        if (!(r->o->mass_g > 0.0 && isfinite(r->o->mass_g)))
+            return ce_reader_fail(r, CE_E_ARG, 0, 0, "a sample mass of %g g is not possible",
+                                  r->o->mass_g);
+        run->mass_g = r->o->mass_g;
+        if (ce_run_set_fact(run, "sample mass", CE_ORIGIN_OPTION, 0, "--mass", "%.6g mg",
+                            1000.0 * run->mass_g) != CE_OK)
+            return ce_reader_no_memory(r);
+    }
+    bool per_mass = run->kind == CE_SIGNAL_POWER && !isnan(run->mass_g);
+    for (size_t i = 0; u != NULL && i < run->n; i++) {
+        double y = ce_to_internal(u, run->signal[i]);
+        run->signal[i] = per_mass ? y * 1e-3 / run->mass_g : y;
+    }
+    if (per_mass) run->kind = CE_SIGNAL_SPECIFIC_POWER;
+    if (u == NULL &&
+        ce_run_warn(run, CE_WARNING, r->header_line, r->group[0].signal + 1,
+                    "nothing says the unit of the heat flow: temperatures can be read, "
+                    "step heights not; give --signal-unit") != CE_OK)
+        return ce_reader_no_memory(r);
+    return CE_OK;
+}
+
+ce_status ce_reader_signal(ce_reader *r)
+{
+    CE_TRY(scale_signal(r));
+    return settle_sign(r);
+}
+
+/* ---- facts ---------------------------------------------------------------------------------- */
+
+static const char *column_text(const ce_reader *r, size_t c, char *room, size_t n)
+{
+    if (r->column[c].title[0] != '\0')
+        (void)snprintf(room, n, "%zu '%s'", c + 1, r->column[c].title);
+    else
+        (void)snprintf(room, n, "%zu", c + 1);
+    return room;
+}
+
+typedef struct {
+    const char *what, *column_option, *unit_key, *unit_option;
+    size_t column;
+    ce_origin origin;
+    const ce_unit *unit;
+    bool unit_given;
+} used_column;
+
+static ce_status column_facts(ce_reader *r, const used_column *u)
+{
+    char text[CE_HEADER_NAME + 40];
+    if (u->column == CE_NOWHERE) {
+        if (ce_run_set_fact(r->run, u->what,
+                            u->origin == CE_ORIGIN_OPTION ? u->origin : CE_ORIGIN_DEFAULT, 0,
+                            u->column_option, "none") != CE_OK)
+            return ce_reader_no_memory(r);
+        return CE_OK;
+    }
+    bool stated = r->column[u->column].head.unit != NULL;
+    size_t unit_line = !stated || u->unit_given ? 0
+                       : r->units_line != 0     ? r->units_line
+                                                : r->header_line;
+    ce_origin unit_origin = u->unit_given     ? CE_ORIGIN_OPTION
+                            : stated          ? CE_ORIGIN_STATED
+                            : u->unit != NULL ? CE_ORIGIN_GUESSED
+                                              : CE_ORIGIN_DEFAULT;
+    ce_origin origin = u->origin;
+    /* The time column of which only the unit was guessed is a stated one. */
+    if (origin == CE_ORIGIN_GUESSED && r->column[u->column].role != CE_MEANS_UNKNOWN)
+        origin = CE_ORIGIN_STATED;
+    if (ce_run_set_fact(r->run, u->what, origin, origin == CE_ORIGIN_STATED ? r->header_line : 0,
+                        u->column_option, "%s",
+                        column_text(r, u->column, text, sizeof text)) != CE_OK ||
+        ce_run_set_fact(r->run, u->unit_key, unit_origin, unit_line, u->unit_option, "%s",
+                        u->unit == NULL ? "not stated" : u->unit->name) != CE_OK)
+        return ce_reader_no_memory(r);
+    return CE_OK;
+}
+
+static ce_status dialect_facts(ce_reader *r)
+{
+    ce_run *run = r->run;
+    const ce_run_options *o = r->o;
+    ce_origin encoding = o->encoding != NULL ? CE_ORIGIN_OPTION
+                         : r->text.guessed   ? CE_ORIGIN_GUESSED
+                                             : CE_ORIGIN_STATED;
+    ce_origin decimal = o->decimal != 0            ? CE_ORIGIN_OPTION
+                        : r->dialect.decimal_known ? CE_ORIGIN_GUESSED
+                                                   : CE_ORIGIN_DEFAULT;
+    if (ce_run_set_fact(run, "encoding", encoding, 0, "--encoding", "%s%s", r->text.encoding,
+                        r->text.mark ? " with byte order mark" : "") != CE_OK ||
+        ce_run_set_fact(run, "delimiter", o->delimiter != 0 ? CE_ORIGIN_OPTION : CE_ORIGIN_GUESSED,
+                        0, "--delimiter", "%s", ce_delimiter_name(r->dialect.delimiter)) != CE_OK ||
+        ce_run_set_fact(run, "decimal mark", decimal, 0, "--decimal", "%s",
+                        ce_decimal_name(r->dialect.decimal)) != CE_OK ||
+        ce_run_set_fact(run, "header", r->header_line != 0 ? CE_ORIGIN_STATED : CE_ORIGIN_DEFAULT,
+                        r->header_line, NULL, "%s",
+                        r->header_line == 0  ? "none"
+                        : r->units_line != 0 ? "names, units below"
+                                             : "names") != CE_OK)
+        return ce_reader_no_memory(r);
+    return CE_OK;
+}
+
+static ce_status layout_facts(ce_reader *r)
+{
+    ce_run *run = r->run;
+    ce_status st = CE_OK;
+    if (r->n_groups > 1)
+        st = ce_run_set_fact(run, "layout", CE_ORIGIN_GUESSED, r->header_line,
+                             "--temperature-column", "%zu segments side by side", r->n_groups);
+    else if (r->segment != CE_NOWHERE)
+        st = ce_run_set_fact(run, "layout", CE_ORIGIN_STATED, r->header_line, NULL,
+                             "segments numbered in column %zu", r->segment + 1);
+    else if (r->n_starts > 0)
+        st = ce_run_set_fact(run, "layout", CE_ORIGIN_GUESSED, 0, NULL, "%zu tables stacked",
+                             r->n_starts + 1);
+    if (st == CE_OK && (!isnan(r->o->rate_K_min) || !isnan(r->rate_K_min))) {
+        bool option = !isnan(r->o->rate_K_min);
+        st = ce_run_set_fact(run, "declared rate", option ? CE_ORIGIN_OPTION : CE_ORIGIN_STATED,
+                             option ? 0 : r->rate_line, "--rate", "%.6g K/min%s",
+                             option ? r->o->rate_K_min : r->rate_K_min,
+                             run->time_s == NULL ? "" : ", not used: the run has times");
+    }
+    for (size_t i = 0; st == CE_OK && i < run->n_entries; i++)
+        if (ce_key_of(run->entry[i].key) == CE_KEY_SAMPLE && run->entry[i].value[0] != '\0')
+            return ce_run_set_fact(run, "sample", CE_ORIGIN_STATED, run->entry[i].line, NULL, "%s",
+                                   run->entry[i].value);
+    return st;
+}
+
+ce_status ce_reader_facts(ce_reader *r)
+{
+    const ce_group *g = &r->group[0];
+    const ce_run_options *o = r->o;
+    const used_column used[] = {
+        {"time column", "--time-column", "time unit", "--time-unit", g->time, r->time_origin,
+         r->time_unit, o->time_unit != NULL},
+        {"temperature column", "--temperature-column", "temperature unit", "--temperature-unit",
+         g->temperature, r->temperature_origin, r->temperature_unit, o->temperature_unit != NULL},
+        {"signal column", "--signal-column", "signal unit", "--signal-unit", g->signal,
+         r->signal_origin, r->signal_unit, o->signal_unit != NULL}};
+    for (size_t i = 0; i < sizeof used / sizeof *used; i++) CE_TRY(column_facts(r, &used[i]));
+    return layout_facts(r) == CE_OK ? CE_OK : ce_reader_no_memory(r);
+}
+
+/* ---- the steps ------------------------------------------------------------------------------ */
+
+static ce_status check_options(ce_reader *r)
+{
+    const ce_run_options *o = r->o;
+    if (o->delimiter != 0 && strchr(",;\t| ", o->delimiter) == NULL)
+        return ce_reader_fail(r, CE_E_ARG, 0, 0, "'%c' is not a delimiter", o->delimiter);
+    if (o->decimal != 0 && o->decimal != '.' && o->decimal != ',')
+        return ce_reader_fail(r, CE_E_ARG, 0, 0, "'%c' is not a decimal mark", o->decimal);
+    if (!isnan(o->rate_K_min) && !(isfinite(o->rate_K_min) && o->rate_K_min != 0.0))
+        return ce_reader_fail(r, CE_E_ARG, 0, 0, "a rate of %g K/min is not possible",
+                              o->rate_K_min);
+    return CE_OK;
+}
+
+static ce_status steps(ce_reader *r, ce_bytes *bytes)
+{
+    CE_TRY(check_options(r));
+    CE_TRY(ce_text_decode(bytes, r->run->name, r->o->encoding, &r->text, r->err));
+    if (r->text.begin == r->text.end)
+        return ce_reader_fail(r, CE_E_SYNTAX, 1, 1, "the file is empty");
+    r->dialect = ce_sniff_numbers(&r->text, r->o->delimiter, r->o->decimal);
+    ce_splitter_init(&r->split, r->run->name, r->dialect.delimiter);
+    CE_TRY(dialect_facts(r));
+    CE_TRY(ce_reader_layout(r));
+    CE_TRY(dialect_facts(r));
+    CE_TRY(ce_reader_columns(r));
+    CE_TRY(ce_reader_rows(r));
+    /* The text may be larger than the numbers: it goes before anything else is allocated. */
+    free(r->text.memory);
+    r->text.memory = r->text.begin = r->text.end = NULL;
+    CE_TRY(ce_reader_behaviour(r));
+    CE_TRY(ce_reader_units(r));
+    CE_TRY(ce_reader_points(r));
+    CE_TRY(ce_reader_programme(r));
+    CE_TRY(ce_reader_facts(r));
+    return ce_reader_signal(r);
+}
+
+static void release(ce_reader *r)
+{
+    for (size_t c = 0; r->rows.value != NULL && c < r->n_columns; c++) free(r->rows.value[c]);
+    free(r->rows.value);
+    free(r->rows.lines.item);
+    free(r->rows.gap);
+    free(r->point_lines.item);
+    free(r->start);
+    free(r->column);
+    ce_splitter_free(&r->split);
+    ce_text_free(&r->text);
+}
+
+/* bytes are consumed. */
+static ce_status read_bytes(ce_bytes *bytes, const char *name, const ce_run_options *options,
+                            bool plain_rows, ce_run **run, ce_error *err)
+{
+    ce_run_options o = options != NULL ? *options : ce_run_options_default();
+    ce_reader r = {.o = &o,
+                   .err = err,
+                   .plain_rows = plain_rows,
+                   .run = ce_run_new(name),
+                   .segment = CE_NOWHERE,
+                   .rate_K_min = (double)NAN};
+    ce_status st =
+        r.run == NULL ? ce_fail_at(err, CE_E_NOMEM, name, 0, 0, "out of memory") : steps(&r, bytes);
+    free(bytes->data);
+    *bytes = (ce_bytes){0};
+    release(&r);
+    if (st == CE_OK)
+        *run = r.run;
+    else
+        ce_run_free(r.run);
     return st;
 }
 
@@ -295,45 +335,12 @@ ce_status ce_run_read_as(const void *bytes, size_t n, const char *name,
                          const ce_run_options *options, bool plain_rows, ce_run **run,
                          ce_error *err)
 {
-    (void)plain_rows;
-    ce_run_options o = options != NULL ? *options : ce_run_options_default();
     *run = NULL;
-    ce_bytes b = {malloc(n + 1), n};
-    if (b.data == NULL) return ce_fail(err, CE_E_NOMEM, "out of memory");
+    ce_bytes b = {n == SIZE_MAX ? NULL : malloc(n + 1), n};
+    if (b.data == NULL) return ce_fail_at(err, CE_E_NOMEM, name, 0, 0, "out of memory");
     if (n > 0) memcpy(b.data, bytes, n);
     b.data[n] = '\0';
-    ce_text text;
-    ce_status st = ce_text_decode(&b, name, o.encoding, &text, err);
-    if (st != CE_OK) return st;
-    reader r = {.run = ce_run_new(name), .o = &o, .text = &text, .err = err};
-    if (r.run == NULL) {
-        ce_text_free(&text);
-        return ce_fail(err, CE_E_NOMEM, "out of memory");
-    }
-    r.dialect = ce_sniff_numbers(&text, o.delimiter, o.decimal);
-    ce_splitter_init(&r.split, name, r.dialect.delimiter);
-    if (r.dialect.rows == 0) st = fail(&r, CE_E_SYNTAX, 1, 0, "the file holds no rows of numbers");
-    (void)ce_run_set_fact(r.run, "encoding", CE_ORIGIN_GUESSED, 0, "--encoding", "%s",
-                          text.encoding);
-    (void)ce_run_set_fact(r.run, "delimiter", CE_ORIGIN_GUESSED, 0, "--delimiter", "%s",
-                          ce_delimiter_name(r.dialect.delimiter));
-    (void)ce_run_set_fact(r.run, "decimal mark", CE_ORIGIN_GUESSED, 0, "--decimal", "%s",
-                          ce_decimal_name(r.dialect.decimal));
-    if (st == CE_OK) st = read_lines(&r);
-    if (st == CE_OK) {
-        drop_filler(&r);
-        st = hand_over(&r);
-    }
-    for (size_t k = 0; k < ROLES; k++) free(r.value[k]);
-    free(r.line);
-    free(r.column);
-    ce_splitter_free(&r.split);
-    ce_text_free(&text);
-    if (st == CE_OK)
-        *run = r.run;
-    else
-        ce_run_free(r.run);
-    return st;
+    return read_bytes(&b, name, options, plain_rows, run, err);
 }
 
 ce_status ce_run_read_memory(const void *bytes, size_t n, const char *name,
@@ -346,9 +353,7 @@ ce_status ce_run_read(const char *path, const ce_run_options *options, ce_run **
 {
     *run = NULL;
     ce_bytes b = {0};
-    ce_status st = ce_bytes_load(
-        path, options != NULL ? options->max_bytes : ce_run_options_default().max_bytes, &b, err);
-    if (st == CE_OK) st = ce_run_read_as(b.data, b.n, path, options, true, run, err);
-    free(b.data);
-    return st;
+    size_t max = options != NULL ? options->max_bytes : ce_run_options_default().max_bytes;
+    ce_status st = ce_bytes_load(path, max, &b, err);
+    return st != CE_OK ? st : read_bytes(&b, path, options, true, run, err);
 }

@@ -20,6 +20,8 @@ const char *ce_signal_unit(ce_signal signal)
         return "W/g";
     case CE_SIGNAL_HEAT_CAPACITY:
         return "J/(g K)";
+    case CE_SIGNAL_UNSTATED:
+        return "unit not stated";
     }
     return "unknown";
 }
