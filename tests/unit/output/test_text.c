@@ -27,7 +27,7 @@ static void shown_text_is_tame(void **state)
     assert_int_equal(ce_text_columns("°C"), 2);
 }
 
-/* Nothing a file says can leave its gnuplot string: quotes are doubled, the rest is plain in single quotes. */
+/* Nothing a file says can leave its gnuplot string: quotes become typographic, the rest is plain in single quotes. */
 static void plot_text_stays_in_its_quotes(void **state)
 {
     (void)state;
@@ -36,7 +36,8 @@ static void plot_text_stays_in_its_quotes(void **state)
     FILE *to = open_memstream(&out, &n);
     ce_plot_text(to, "'; system('touch x'); `id` $HOME \"\n\\", 0);
     (void)fclose(to);
-    assert_string_equal(out, "'''; system(''touch x''); `id` $HOME \"?\\'");
+    assert_string_equal(
+        out, "'\xE2\x80\x99; system(\xE2\x80\x99touch x\xE2\x80\x99); `id` $HOME \"?\\'"); `id` $HOME \"?\\'");
     free(out);
 }
 
