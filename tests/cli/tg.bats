@@ -60,6 +60,20 @@ setup_file() { export runs=$SOURCE/examples/quellstein/runs; }
     [ "$(jq -c '[.runs[0].segments[].kind]' out.txt)" = '["heating","cooling","isothermal","heating"]' ]
 }
 
+@test "columns can be named or numbered, units and sign overruled" {
+    awk 'BEGIN { print "alpha;beta (K);gamma;delta (°C)"; for (i = 0; i < 400; i++) { T = 300 + 0.3 * i
+        v = -0.2 - 0.05 / (1 + exp(-(T - 360) / 1.5)); t = T - 273.15; print i * 1.8 ";" 300 ";" v ";" t } }' > odd.txt
+    run_it tg odd.txt
+    expect_status 3
+    run_it tg --format json --time-column alpha --time-unit s --temperature-column 4 --signal-column gamma \
+        --signal-unit W/g --sign exo-up odd.txt
+    expect_status 0
+    close '.runs[0].transitions[0].half_step.value_K' 360 0.0003
+    run_it tg --temperature-column 9 odd.txt
+    expect_status 3
+    expect_in "$err" "odd.txt:1: --temperature-column: there is no column '9'"
+}
+
 @test "figures: scripts are the same bytes each time, pictures are drawn, hostile names stay text" {
     run_it figure run -o a.gp --picture a.svg "$runs/Q5-1.txt"
     expect_status 0
