@@ -15,8 +15,11 @@ void ce_plot_text(FILE *to, const char *s, size_t columns)
     char *clean = ce_text_shown(s, columns);
     (void)fputc('\'', to);
     for (const char *p = clean == NULL ? "" : clean; *p != '\0'; p++) {
-        if (*p == '\'') (void)fputc('\'', to);
-        (void)fputc(*p, to);
+        /* gnuplot 5.4 stumbles over doubled quotes at the ends of a string: the typographic one is drawn alike */
+        if (*p == '\'')
+            (void)fputs("\xE2\x80\x99", to);
+        else
+            (void)fputc(*p, to);
     }
     (void)fputc('\'', to);
     free(clean);

@@ -132,6 +132,30 @@ static double falls_back(const ce_run *run, const ce_segment *s, size_t *at)
     return most;
 }
 
+/* In a run that only heats (or only cools) even small steps back deserve a word. */
+static ce_status note_steps_back(ce_reader *r)
+{
+    const ce_run *run = r->run;
+    size_t ramps[3] = {0, 0, 0}, steps = 0, first = 0;
+    double most = 0.0;
+    for (size_t i = 0; i < run->n_segments; i++) ramps[run->segment[i].kind]++;
+    if (r->n_starts > 0 || (ramps[CE_HEATING] > 0) == (ramps[CE_COOLING] > 0)) return CE_OK;
+    double sign = ramps[CE_HEATING] > 0 ? 1.0 : -1.0;
+    for (size_t i = 1; i < run->n; i++) {
+        double back = sign * (run->temperature_K[i - 1] - run->temperature_K[i]);
+        if (back <= 0.0) continue;
+        if (steps++ == 0) first = i;
+        most = fmax(most, back);
+    }
+    if (steps == 0) return CE_OK;
+    if (ce_run_warn(r->run, most > BACK_K ? CE_WARNING : CE_NOTE,
+                    ce_lines_find(&r->point_lines, first), r->group[0].temperature + 1,
+                    "the temperature is not monotone: %zu step%s back, by %.2g K at most", steps,
+                    steps == 1 ? "" : "s", most) != CE_OK)
+        return ce_reader_no_memory(r);
+    return CE_OK;
+}
+
 static ce_status check_ramps(ce_reader *r)
 {
     const ce_run *run = r->run;
@@ -140,11 +164,10 @@ static ce_status check_ramps(ce_reader *r)
         size_t at = s->first;
         if (s->kind == CE_ISOTHERMAL) continue;
         double back = falls_back(run, s, &at);
-        if (back > BACK_K &&
-            ce_run_warn(r->run, CE_WARNING, ce_lines_find(&r->point_lines, at),
-                        r->group[0].temperature + 1,
-                        "the temperature of segment %zu goes back by %.2g K: not monotone",
-                        s->index, back) != CE_OK)
+        if (back > BACK_K && ce_run_warn(r->run, CE_WARNING, ce_lines_find(&r->point_lines, at),
+                                         r->group[0].temperature + 1,
+                                         "the temperature of segment %zu falls back by %.2g K",
+                                         s->index, back) != CE_OK)
             return ce_reader_no_memory(r);
         if (s->rate_sd_K_min > 0.2 * fabs(s->rate_K_min) &&
             ce_run_warn(r->run, CE_WARNING, s->line, 0,
@@ -152,7 +175,7 @@ static ce_status check_ramps(ce_reader *r)
                         s->index, s->rate_K_min, s->rate_sd_K_min) != CE_OK)
             return ce_reader_no_memory(r);
     }
-    return CE_OK;
+    return note_steps_back(r);
 }
 
 ce_status ce_reader_programme(ce_reader *r)
