@@ -66,10 +66,10 @@ static size_t find_time(const behaviour *b, size_t n)
 static ce_status cannot_tell(ce_reader *r, const char *what, const char *option)
 {
     return ce_reader_fail(r, CE_E_SYNTAX, r->header_line != 0 ? r->header_line : r->data_line, 0,
-                          "%s says which of the %zu columns is the %s, and their values leave it "
-                          "open: give --%s-column",
-                          r->header_line != 0 ? "no word of the header" : "no header", r->n_columns,
-                          what, option);
+                          "no column holds the %s by %s, and the values leave it open: give "
+                          "--%s-column",
+                          what, r->header_line != 0 ? "its name" : "a name (there is no header)",
+                          option);
 }
 
 static void take_out(behaviour *b, size_t *n, size_t i)

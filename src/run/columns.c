@@ -56,8 +56,8 @@ static ce_status by_option(ce_reader *r, const char *wanted, const char *option,
         found = (size_t)x - 1;
     if (found == CE_NOWHERE)
         return ce_reader_fail(r, CE_E_ARG, r->header_line, 0,
-                              "no column '%.60s' for --%s-column: the table has %zu columns",
-                              wanted, option, r->n_columns);
+                              "--%s-column: there is no column '%.60s' among %zu", option, wanted,
+                              r->n_columns);
     *at = found;
     return CE_OK;
 }

@@ -62,6 +62,10 @@ static ce_status guess_temperature_unit(ce_reader *r, size_t column)
                               "nothing says whether the temperatures are °C or K, and their values "
                               "leave it open: give --temperature-unit");
     r->temperature_unit = ce_unit_find("°C", strlen("°C"));
+    if (ce_run_warn(r->run, CE_WARNING, r->header_line, column + 1,
+                    "nothing says the unit of temperature: °C is taken, as kelvin would be colder "
+                    "than a DSC goes; overrule with --temperature-unit") != CE_OK)
+        return ce_reader_no_memory(r);
     return CE_OK;
 }
 

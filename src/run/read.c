@@ -276,7 +276,7 @@ static ce_status steps(ce_reader *r, ce_bytes *bytes)
     CE_TRY(check_options(r));
     CE_TRY(ce_text_decode(bytes, r->run->name, r->o->encoding, &r->text, r->err));
     if (r->text.begin == r->text.end)
-        return ce_reader_fail(r, CE_E_SYNTAX, 1, 1, "the file is empty");
+        return ce_reader_fail(r, CE_E_SYNTAX, 1, 1, "the file is empty: no rows of numbers");
     r->dialect = ce_sniff_numbers(&r->text, r->o->delimiter, r->o->decimal);
     ce_splitter_init(&r->split, r->run->name, r->dialect.delimiter);
     CE_TRY(dialect_facts(r));

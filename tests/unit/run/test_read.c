@@ -78,9 +78,8 @@ static void what_cannot_be_read_is_refused_with_its_place(void **state)
          "10,11\n",
          1, "no column holds the temperature"},
         {"Time (s),Temperature,Heat flow "
-         "(mW)\n0,1,2\n1,2,3\n2,3,4\n3,4,5\n4,5,6\n5,6,7\n6,7,8\n7,8,9\n8,9,10\n9,10,"
-         "11\n",
-         1, "has no unit"},
+         "(mW)\n0,301,2\n1,302,3\n2,303,4\n3,304,5\n4,305,6\n5,306,7\n6,307,8\n",
+         1, "give --temperature-unit"},
     };
     for (size_t i = 0; i < sizeof bad / sizeof *bad; i++) {
         ce_run *run;
