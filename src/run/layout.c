@@ -235,6 +235,36 @@ static bool may_be_names(const ce_reader *r, const ce_span *cell)
     return true;
 }
 
+/* A line that speaks of time and temperature but has another number of cells than the rows is a
+ * header that does not fit: whatever the rows are, they are not what it says. */
+static ce_status other_header(ce_reader *r, const above *a)
+{
+    for (size_t i = 0; i < a->n && i < 3; i++) {
+        size_t cells = 0, known = 0;
+        const char *p = past_comment(a->item[i].p, a->item[i].end);
+        ce_span c;
+        while (r->dialect.delimiter != ' ' &&
+               next_cell(&p, a->item[i].end, r->dialect.delimiter, &c)) {
+            char title[CE_HEADER_NAME];
+            ce_header h;
+            copy_title(title, c);
+            (void)ce_sign_of(title, title, sizeof title);
+            ce_header_split(title, strlen(title), &h);
+            ce_meaning m = h.name[0] == '\0' ? CE_MEANS_UNKNOWN : ce_meaning_of(h.name, h.unit);
+            known += m != CE_MEANS_UNKNOWN && m != CE_MEANS_OTHER ? 1 : 0;
+            if (c.n > 0) cells++;
+        }
+        if (known >= 2 && cells != r->n_columns)
+            return ce_reader_fail(r, CE_E_SYNTAX, a->item[i].line, 0,
+                                  "the header names %zu columns, the rows have %zu%s", cells,
+                                  r->n_columns,
+                                  r->dialect.delimiter == ',' && cells < r->n_columns
+                                      ? ": decimal commas need another delimiter"
+                                      : "");
+    }
+    return CE_OK;
+}
+
 /* Names: the nearest line above the table with known words, else the nearest that may be one.
  * Units: a row of units between the names and the table. */
 static ce_status read_header(ce_reader *r, const above *a)
@@ -263,12 +293,12 @@ static ce_status read_header(ce_reader *r, const above *a)
         r->units_line = a->item[units].line;
     }
     free(cell);
-    if (a->n > 0 && a->item[0].kind == CE_ROW_PART && a->item[0].line != r->header_line &&
-        a->item[0].line != r->units_line && r->header_line > 0 &&
-        ce_run_warn(r->run, CE_WARNING, a->item[0].line, 0,
-                    "first row left out: it is not a row of numbers") != CE_OK)
-        return ce_reader_no_memory(r);
-    return CE_OK;
+    for (size_t i = 0; i < names && names < ABOVE; i++)
+        if (i != units && ce_run_warn(r->run, CE_WARNING, a->item[i].line, 0,
+                                      "the first row is left out: it holds neither units nor "
+                                      "numbers alone") != CE_OK)
+            return ce_reader_no_memory(r);
+    return names < ABOVE ? CE_OK : other_header(r, a);
 }
 
 /* ---- preamble ------------------------------------------------------------------------------- */

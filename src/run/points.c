@@ -3,6 +3,8 @@
  * segment must begin. */
 #include "run/reader.h"
 
+#include "base/order.h"
+
 #include <math.h>
 #include <stdlib.h>
 #include <string.h>
@@ -232,7 +234,7 @@ static size_t fillers(const points *p, const ce_unit *unit)
         bool nothing = p->T[k] == 0.0 || fabs(T - CE_ZERO_CELSIUS_K) < 1e-6;
         double jump = fabs(p->T[k + 1] - p->T[k]), step = fabs(p->T[k + 2] - p->T[k + 1]);
         bool again = p->T[k + 1] == p->T[k] && p->y[k + 1] == 0.0;
-        if (!nothing || !(again || (jump > 5.0 && jump > 20.0 * step))) break;
+        if (!nothing || !(again || (jump > 5.0 && jump > 5.0 * step))) break;
         k++;
     }
     /* Rows of zeros only count when they end in a jump. */
@@ -389,6 +391,22 @@ static ce_status turn_groups(points *p)
     return CE_OK;
 }
 
+/* Where the temperature jumps and stays, one table ends and another begins, marks or not. */
+static ce_status starts_from_jumps(points *p)
+{
+    enum { SAMPLES = 2001 };
+    double step[SAMPLES];
+    size_t n = 0, stride = p->n / (SAMPLES - 1) + 1;
+    for (size_t j = 1; j < p->n; j += stride) step[n++] = fabs(p->T[j] - p->T[j - 1]);
+    double large = fmax(5.0, 15.0 * ce_median(step, n));
+    for (size_t j = 2; j + 1 < p->n; j++)
+        if (fabs(p->T[j] - p->T[j - 1]) > large && fabs(p->T[j + 1] - p->T[j - 1]) > large &&
+            fabs(p->T[j] - p->T[j - 2]) > large)
+            CE_TRY(begin_segment(p->r, j));
+    sort_starts(p->r);
+    return CE_OK;
+}
+
 static ce_status starts_from_clock(points *p)
 {
     ce_reader *r = p->r;
@@ -473,7 +491,7 @@ static ce_status make_points(points *p)
     CE_TRY(turn_groups(p));
     if (r->n_groups == 1) CE_TRY(starts_from_gaps(p));
     CE_TRY(starts_from_column(r));
-    sort_starts(r);
+    CE_TRY(starts_from_jumps(p));
     CE_TRY(starts_from_clock(p));
     CE_TRY(into_kelvin(p));
     into_seconds(p);

@@ -100,7 +100,7 @@ static bool usable_word(const ce_unit *u)
     return u != NULL && strcmp(u->name, "1") != 0;
 }
 
-/* "Name unit", "Name in unit", "Name, unit": the longest unit at the end. */
+/* "Name unit", "Name in unit", "Name, unit", "Name / unit": the longest unit at the end. */
 static bool trailing(ce_span t, ce_header *h)
 {
     const char *end = t.at + t.n;
@@ -109,7 +109,7 @@ static bool trailing(ce_span t, ce_header *h)
         ce_span u = ce_trim((ce_span){p, (size_t)(end - p)});
         if (!usable_word(ce_unit_find(u.at, u.n))) continue;
         const char *from = p;
-        while (from > t.at && (from[-1] == ' ' || from[-1] == ',' || from[-1] == ';')) from--;
+        while (from > t.at && strchr(" ,;/", from[-1]) != NULL) from--;
         if (from - t.at > 3 && strncasecmp(from - 3, " in", 3) == 0) from -= 3;
         if (from - t.at > 3 && strncasecmp(from - 3, " en", 3) == 0) from -= 3;
         return from > t.at && take(h, t, from, end, u);
@@ -121,7 +121,7 @@ void ce_header_split(const char *text, size_t len, ce_header *header)
 {
     *header = (ce_header){0};
     ce_span t = ce_trim((ce_span){text, len});
-    if (bracketed(t, header) || slashed(t, header) || trailing(t, header)) return;
+    if (bracketed(t, header) || trailing(t, header) || slashed(t, header)) return;
     copy(header->name, sizeof header->name, t);
 }
 

@@ -1,1 +1,1 @@
-ce_unit_test(run read)
+ce_unit_test(run read corpus)
