@@ -391,7 +391,7 @@ static ce_status note_sign(ce_reader *r, const char *whole, const char *value, b
 
 static ce_status preamble_line(ce_reader *r, const char *p, const char *end, size_t line)
 {
-    char key[LONGEST_ENTRY], value[LONGEST_ENTRY], whole[2 * LONGEST_ENTRY];
+    char key[LONGEST_ENTRY], value[LONGEST_ENTRY], whole[2 * LONGEST_ENTRY + 8];
     p = past_comment(p, end);
     if (!take_apart(r, p, end, key, value)) {
         *whole = '\0';
