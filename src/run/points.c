@@ -459,11 +459,16 @@ static ce_status into_kelvin(points *p)
     return CE_OK;
 }
 
-static void into_seconds(points *p)
+static ce_status into_seconds(points *p)
 {
-    const ce_unit *u = p->r->time_unit;
-    for (size_t j = 0; p->t != NULL && u != NULL && j < p->n; j++)
-        p->t[j] = ce_to_internal(u, p->t[j]);
+    ce_reader *r = p->r;
+    for (size_t j = 0; p->t != NULL && j < p->n; j++) {
+        if (r->time_unit != NULL) p->t[j] = ce_to_internal(r->time_unit, p->t[j]);
+        if (!(fabs(p->t[j]) <= 1e12))
+            return ce_reader_fail(r, CE_E_DOMAIN, ce_lines_find(&r->point_lines, j),
+                                  r->group[0].time + 1, "a time of %g s is not possible", p->t[j]);
+    }
+    return CE_OK;
 }
 
 static ce_status note_missing(const points *p)
@@ -494,8 +499,7 @@ static ce_status make_points(points *p)
     CE_TRY(starts_from_jumps(p));
     CE_TRY(starts_from_clock(p));
     CE_TRY(into_kelvin(p));
-    into_seconds(p);
-    return CE_OK;
+    return into_seconds(p);
 }
 
 ce_status ce_reader_points(ce_reader *r)

@@ -124,6 +124,11 @@ static ce_status scale_signal(ce_reader *r)
         double y = ce_to_internal(u, run->signal[i]);
         run->signal[i] = per_mass ? y * 1e-3 / run->mass_g : y;
     }
+    for (size_t i = 0; i < run->n; i++)
+        if (!(fabs(run->signal[i]) <= 1e12))
+            return ce_reader_fail(r, CE_E_DOMAIN, ce_lines_find(&r->point_lines, i),
+                                  r->group[0].signal + 1, "a heat flow of %g is not possible",
+                                  run->signal[i]);
     if (per_mass) run->kind = CE_SIGNAL_SPECIFIC_POWER;
     if (u == NULL &&
         ce_run_warn(run, CE_WARNING, r->header_line, r->group[0].signal + 1,

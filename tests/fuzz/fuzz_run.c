@@ -35,8 +35,8 @@ static void check(const ce_run *run)
     MUST(n >= 2 && n <= CE_MAX_POINTS && n_segments > 0 && n_segments <= CE_MAX_SEGMENTS);
     for (size_t i = 0; i < n; i++) {
         MUST(isfinite(ce_run_temperature_K(run)[i]) && ce_run_temperature_K(run)[i] >= 0.0);
-        MUST(!isnan(ce_run_signal(run)[i]));
-        MUST(ce_run_time_s(run) == NULL || !isnan(ce_run_time_s(run)[i]));
+        MUST(isfinite(ce_run_signal(run)[i]));
+        MUST(ce_run_time_s(run) == NULL || isfinite(ce_run_time_s(run)[i]));
     }
     for (size_t i = 0; i < n_segments; i++) {
         MUST(s[i].first == points && s[i].n > 0 && s[i].index == i + 1 && s[i].line > 0);

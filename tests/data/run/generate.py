@@ -342,6 +342,8 @@ bad("h-swapped-units.csv", "Time (s),Temperature,Heat flow endo up\ns,W/g,°C\n"
 bad("h-kelvin-is-celsius.csv", "Time (s),Temperature [K],Heat flow endo up (W/g)\n" + R, 2, 2, "look like °C")
 bad("h-below-zero-kelvin.csv", put(10, "92.31,-300.0,0.2\n"), 12, 2, "not possible")
 bad("h-far-too-hot.csv", put(10, "92.31,9999.0,0.2\n"), 12, 2, "not possible")
+bad("h-huge-heat-flow.csv", put(10, "92.31,42.235,1e300\n"), 12, 3, "a heat flow of 1e+300")
+bad("h-huge-time.csv", put(39, "1e300,86.85,0.3\n"), 41, 1, "a time of 1e+300")
 bad("h-minutes-under-s.csv", EN + tm.text(","), 1, 1, "are they minutes")
 bad("h-minutes-against-declared.csv", "Heating rate: 2 K/min\n" + EN + Table(ramp(300, 360, 2), tu="min", digits=(5, 3, 5)).text(","), 2, 1,
     "declares 2")
