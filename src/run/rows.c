@@ -339,7 +339,8 @@ static ce_status read_on(scanner *s)
     ce_reader *r = s->r;
     const char *p = r->data, *end = r->text.end;
     while (p < end) {
-        if (r->plain_rows) CE_TRY(plain_rows(s, &p));
+        /* Where the delimiter is also the decimal mark only quotes tell them apart. */
+        if (r->plain_rows && r->dialect.delimiter != r->dialect.decimal) CE_TRY(plain_rows(s, &p));
         if (p == end) break;
         const char *begin = p, *line_end = ce_line_end(p, end);
         size_t next_line = s->line;

@@ -135,7 +135,7 @@ static bool established(const frame *f, ce_segment_kind kind, size_t c, size_t i
 {
     if (kind != CE_ISOTHERMAL)
         return fabs(f->T[i] - f->T[c]) > fmax(RAMP_K, 6.0 * f->noise_K) && i - c >= 2;
-    double least = fmax(3.0 * f->window, 10.0 * f->step);
+    double least = fmax(1.5 * f->window, 10.0 * f->step);
     if (f->t != NULL) least = fmax(least, HOLD_SECONDS);
     return at(f, i) - at(f, c) >= least;
 }
@@ -199,6 +199,25 @@ static size_t local_rates(frame *f, const ce_segment *s, double *x)
     return n;
 }
 
+/* Rate over long chords: the mean of the middle half of the slopes over a quarter of the segment.
+ * Neither a coarse display of temperature nor ripple or lag at the ends biases it. */
+static double chord_rate(const frame *f, const ce_segment *s, double *x)
+{
+    size_t lag = s->n / 4 > 0 ? s->n / 4 : 1, n = 0, kept = 0;
+    for (size_t i = s->first; i + lag < s->first + s->n; i += stride_of(s->n))
+        if (at(f, i + lag) > at(f, i)) x[n++] = slope(f, i, i + lag);
+    if (n == 0) return (double)NAN;
+    double low = ce_quantile(x, n, 0.25), high = ce_quantile(x, n, 0.75), sum = 0.0;
+    /* Interpolated quantiles of equal slopes may miss them by a rounding. */
+    double slack = 1e-12 * fmax(fabs(low), fabs(high));
+    for (size_t i = 0; i < n; i++)
+        if (x[i] >= low - slack && x[i] <= high + slack) {
+            sum += x[i];
+            kept++;
+        }
+    return sum / (double)kept;
+}
+
 static void describe(frame *f, ce_segment *s, double rate_K_min)
 {
     s->low_K = s->high_K = f->T[s->first];
@@ -214,8 +233,8 @@ static void describe(frame *f, ce_segment *s, double rate_K_min)
     }
     size_t n = local_rates(f, s, f->scratch);
     if (n == 0) return;
-    s->rate_K_min = 60.0 * ce_median(f->scratch, n);
     s->rate_sd_K_min = 60.0 * CE_MAD_TO_SD * ce_mad(f->scratch, n);
+    s->rate_K_min = 60.0 * chord_rate(f, s, f->scratch);
 }
 
 /* Two ramps of the same direction and different rates, one after the other without a hold: where
@@ -259,6 +278,10 @@ static ce_status split_rates(ce_run *run, frame *f, size_t from, ce_error *err)
                 (run->n_segments - i - 2) * sizeof *run->segment);
         run->segment[i].n = border - s.first;
         run->segment[i + 1] = added;
+        /* One of the two may be a hold that was too short, or too coarsely measured, to be seen. */
+        for (size_t k = i; k < i + 2; k++)
+            if (fabs(chord_rate(f, &run->segment[k], f->scratch)) < f->hold)
+                run->segment[k].kind = CE_ISOTHERMAL;
         i++;
     }
     return CE_OK;
