@@ -164,7 +164,9 @@ static ce_status choose_temperature(ce_reader *r, const size_t *T, size_t n, siz
         *at = T[0];
     else if (n > 1) {
         *at = sample_temperature(r, T, n);
-        if (*at == CE_NOWHERE && signal != CE_NOWHERE) *at = nearest_before(T, n, signal);
+        /* Who names the signal means the temperature beside it. */
+        if (*at == CE_NOWHERE && r->signal_origin == CE_ORIGIN_OPTION)
+            *at = nearest_before(T, n, signal);
         if (*at == CE_NOWHERE) return ambiguous(r, "temperature", "temperature", T, n);
     } else if (collect(r, is_programme, p, 2) == 1) {
         *at = p[0];

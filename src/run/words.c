@@ -56,10 +56,10 @@ static bool has_one_of(const char *word, const char *const *list, size_t n)
 #define HAS(word, list) has_one_of(word, list, COUNT(list))
 
 static const char *const of_no_use[] = {
-    "deriv",         "ableitung",   "integral", "baseline",   "grundlinie", "basislinie",
-    "unsubtracted",  "sensit",      "massloss", "weightloss", "massloss",   "masseverlust",
-    "massenverlust", "purge",       "pressure", "voltage",    "gasflow",    "conversion",
-    "gasfluss",      "lignedebase", "lineabase"};
+    "deriv",         "ableitung",   "integral",  "baseline",   "grundlinie", "basislinie",
+    "unsubtracted",  "sensit",      "massloss",  "weightloss", "massloss",   "masseverlust",
+    "massenverlust", "purge",       "pressure",  "voltage",    "gasflow",    "conversion",
+    "gasfluss",      "lignedebase", "lineabase", "differen",   "delta",      "diferencia"};
 static const char *const of_no_use_whole[] = {
     "tg",   "dtg",  "mass",  "masse", "masa", "weight", "index",  "no",
     "nr",   "n",    "point", "punkt", "row",  "id",     "number", "nummer",

@@ -189,6 +189,8 @@ ok("extra-columns.csv", "Index;Time (s);Sample temperature (°C);Program tempera
 both = Table(H, yu="mW", mass_mg=5.0)
 ok("two-heat-flows.csv", "Time (s);Temperature (°C);Heat flow (mW);Heat flow endo up (W/g)\n" +
    "".join(f"{r[0]};{r[1]};{b[2]};{r[2]}\n" for r, b in zip(t.rows, both.rows)), t.val, warn="is taken")
+ok("difference-column.csv", "Time (s);Temperature (°C);Temperature difference (K);Heat flow endo up (W/g)\n" +
+   "".join(f"{r[0]};{r[1]};0.1;{r[2]}\n" for r in t.rows), t.val)
 ok("text-column.csv", "Time (s),Temperature (°C),Heat flow endo up (W/g),Phase\n" +
    "".join(",".join(r) + ",ramp\n" for r in t.rows), t.val)
 
@@ -353,6 +355,10 @@ bad("h-time-unit-open.csv", "Time,Temperature (°C),Heat flow endo up (W/g)\n" +
     "give --time-unit")
 bad("h-two-signals.csv", "Temperature (°C),Heating 1 heat flow (W/g),Cooling heat flow (W/g)\n" +
     "".join(f"{r[1]},{r[2]},{r[2]}\n" for r in t.rows), 1, 3, "choose with --signal-column")
+bad("h-two-temperatures.csv", "Time (s),Temperature 1 (°C),Temperature 2 (°C),Heat flow (W/g)\n" +
+    "".join(f"{r[0]},{r[1]},{r[1]},{r[2]}\n" for r in t.rows), 1, 3, "choose with --temperature-column")
+bad("h-wide-table.csv", "Temperature (°C),A1 heat flow (W/g),A2 heat flow (W/g),A3 heat flow (W/g)\n" +
+    "".join(f"{r[1]},{r[2]},{r[2]},{r[2]}\n" for r in t.rows), 1, 3, "3 columns could be the heat flow")
 bad("h-no-signal.csv", "Time (s),Temperature (°C),Mass (mg)\n" + R, 1, 0, "no column holds the heat flow")
 bad("h-headerless-open.csv", "".join(f"{i},{i * 2},{i * 3}\n" for i in range(1, 30)), 1, 0, "no header")
 bad("h-sign-contradicts.csv", "Sign: exo up\n" + EN + R, 2, 3, "line 1 says exo up")

@@ -3,6 +3,7 @@
 
 #include "text/number.h"
 
+#include <locale.h>
 #include <stdbool.h>
 #include <stdlib.h>
 
@@ -148,6 +149,24 @@ static void decimal_comma_and_typographic_minus(void **state)
     assert_true(x == 1e-3);
 }
 
+/* A process in a comma locale reads the same numbers; where no such locale is installed there is
+ * nothing to show. */
+static void the_locale_does_not_matter(void **state)
+{
+    (void)state;
+    static const char *const names[] = {"de_DE.UTF-8", "fr_FR.UTF-8", "es_ES.UTF-8", "de_DE"};
+    const char *found = NULL;
+    for (size_t i = 0; i < sizeof names / sizeof *names && found == NULL; i++)
+        found = setlocale(LC_NUMERIC, names[i]);
+    double x = 0.0, y = 0.0;
+    bool a = ce_parse_number("0.1234567890123456789012345", 27, '.', &x);
+    bool b = ce_parse_number("373.15", 6, '.', &y);
+    (void)setlocale(LC_NUMERIC, "C");
+    if (found == NULL) skip();
+    assert_true(a && b);
+    assert_true(x == 0.1234567890123456789012345 && y == 373.15);
+}
+
 int main(void)
 {
     const struct CMUnitTest tests[] = {
@@ -155,6 +174,7 @@ int main(void)
         cmocka_unit_test(random_numbers_are_exact),
         cmocka_unit_test(anything_else_is_refused),
         cmocka_unit_test(decimal_comma_and_typographic_minus),
+        cmocka_unit_test(the_locale_does_not_matter),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);
 }
