@@ -95,12 +95,27 @@ static bool side_by_side(ce_reader *r, const size_t *t, size_t nt, const size_t 
             (nt > 0 && t[g] - t[g - 1] != step))
             return false;
         if (!same_quantity(&r->column[T[g]], &r->column[T[0]]) ||
-            !same_quantity(&r->column[s[g]], &r->column[s[0]]))
+            !same_quantity(&r->column[s[g]], &r->column[s[0]]) ||
+            (nt > 0 && !same_quantity(&r->column[t[g]], &r->column[t[0]])) ||
+            r->column[s[g]].sign != r->column[s[0]].sign)
             return false;
     }
     for (size_t g = 0; g < nT; g++)
         r->group[g] = (ce_group){nt > 0 ? t[g] : CE_NOWHERE, T[g], s[g]};
     r->n_groups = nT;
+    return true;
+}
+
+/* Signals of heating and cooling beside one column of temperature and none of time. */
+static bool one_temperature(ce_reader *r, size_t T, const size_t *s, size_t ns)
+{
+    if (ns < 2 || ns > CE_MAX_GROUPS) return false;
+    for (size_t g = 0; g < ns; g++)
+        if (r->column[s[g]].direction == 0 || !same_quantity(&r->column[s[g]], &r->column[s[0]]) ||
+            r->column[s[g]].sign != r->column[s[0]].sign)
+            return false;
+    for (size_t g = 0; g < ns; g++) r->group[g] = (ce_group){CE_NOWHERE, T, s[g]};
+    r->n_groups = ns;
     return true;
 }
 
@@ -213,6 +228,7 @@ ce_status ce_reader_columns(ce_reader *r)
     ce_group *g = &r->group[0];
     *g = (ce_group){CE_NOWHERE, CE_NOWHERE, CE_NOWHERE};
     if (!given && side_by_side(r, t, no_time ? 0 : nt, T, nT, s, ns)) return CE_OK;
+    if (!given && nT == 1 && nt == 0 && one_temperature(r, T[0], s, ns)) return CE_OK;
     if (o->signal_column != NULL) {
         CE_TRY(by_option(r, o->signal_column, "signal", &g->signal));
         r->signal_origin = CE_ORIGIN_OPTION;

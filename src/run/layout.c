@@ -9,10 +9,11 @@
 #include <stdlib.h>
 #include <string.h>
 
-#define ABOVE      8  /* lines above the table that may be its header                  */
-#define LOOK_ROWS  20 /* rows whose cells are counted                                  */
-#define PART_ROWS  3  /* rows with words in them make a table when there are so many   */
-#define PART_CLEAR 50 /* ... and so many settle it                                     */
+#define ABOVE      8   /* lines above the table that may be its header                  */
+#define LOOK_ROWS  20  /* rows whose cells are counted                                  */
+#define PART_ROWS  3   /* rows with words in them make a table when there are so many   */
+#define PART_CLEAR 50  /* ... and so many settle it                                     */
+#define LOOK_BELOW 200 /* lines below the first rows that may hold a header             */
 
 typedef struct {
     const char *p, *end;
@@ -34,13 +35,13 @@ static void push(above *a, seen_line l)
 }
 
 /* The table begins with the first two rows of numbers in a row; where there are none, with the
- * first rows that mix numbers and words alike. */
-static void find_data(ce_reader *r, above *found)
+ * first rows that mix numbers and words alike. p, line: where to begin. */
+static void find_data(ce_reader *r, const char *p, size_t line, above *found)
 {
     above a = {0}, at_pending = {0}, at_part = {0}, at_candidate = {0};
     seen_line pending = {0}, part = {0}, candidate = {0};
-    size_t line = 1, part_cells = 0, part_rows = 0;
-    for (const char *p = r->text.begin; p < r->text.end; line++) {
+    size_t part_cells = 0, part_rows = 0;
+    for (; p < r->text.end; line++) {
         const char *e = ce_line_end(p, r->text.end);
         size_t cells;
         ce_row_kind k = ce_row_look(p, e, r->dialect.delimiter, r->dialect.decimal, &cells);
@@ -235,25 +236,64 @@ static bool may_be_names(const ce_reader *r, const ce_span *cell)
     return true;
 }
 
+/* How many cells of a line name a quantity, whatever the number of cells. */
+static size_t known_words(const ce_reader *r, const char *p, const char *end, size_t *cells)
+{
+    char way = r->dialect.delimiter == ' ' ? WIDE_BLANKS : r->dialect.delimiter;
+    size_t known = 0;
+    ce_span c;
+    *cells = 0;
+    p = past_comment(p, end);
+    while (next_cell(&p, end, way, &c)) {
+        char title[CE_HEADER_NAME];
+        ce_header h;
+        copy_title(title, c);
+        (void)ce_sign_of(title, title, sizeof title);
+        ce_header_split(title, strlen(title), &h);
+        ce_meaning m = h.name[0] == '\0' ? CE_MEANS_UNKNOWN : ce_meaning_of(h.name, h.unit);
+        known += m != CE_MEANS_UNKNOWN && m != CE_MEANS_OTHER ? 1 : 0;
+        if (c.n > 0) ++*cells;
+    }
+    return known;
+}
+
+/* Numbers may stand above the header, of a calibration say: when nothing above the first rows names
+ * a quantity but a line below them does, the table is the one below. */
+static ce_status look_below(ce_reader *r, above *a)
+{
+    size_t cells, line = r->data_line, first = line;
+    for (size_t i = 0; i < a->n; i++)
+        if (known_words(r, a->item[i].p, a->item[i].end, &cells) >= 2) return CE_OK;
+    const char *p = r->data;
+    for (; p < r->text.end && line < first + LOOK_BELOW; line++) {
+        const char *e = ce_line_end(p, r->text.end);
+        if (ce_row_look(p, e, r->dialect.delimiter, r->dialect.decimal, &cells) == CE_ROW_TEXT &&
+            known_words(r, p, e, &cells) >= 2)
+            break;
+        p = ce_line_next(e, r->text.end);
+    }
+    if (p == r->text.end || line == first + LOOK_BELOW) return CE_OK;
+    const char *data = r->data;
+    find_data(r, p, line, a);
+    if (r->data == NULL) {
+        r->data = data;
+        r->data_line = first;
+        return CE_OK;
+    }
+    if (ce_run_warn(r->run, CE_WARNING, first, 0,
+                    "numbers above the header of line %zu are not used", line) != CE_OK)
+        return ce_reader_no_memory(r);
+    return CE_OK;
+}
+
 /* A line that speaks of time and temperature but has another number of cells than the rows is a
  * header that does not fit: whatever the rows are, they are not what it says. */
 static ce_status other_header(ce_reader *r, const above *a)
 {
     for (size_t i = 0; i < a->n && i < 3; i++) {
         size_t cells = 0, known = 0;
-        const char *p = past_comment(a->item[i].p, a->item[i].end);
-        ce_span c;
-        while (r->dialect.delimiter != ' ' &&
-               next_cell(&p, a->item[i].end, r->dialect.delimiter, &c)) {
-            char title[CE_HEADER_NAME];
-            ce_header h;
-            copy_title(title, c);
-            (void)ce_sign_of(title, title, sizeof title);
-            ce_header_split(title, strlen(title), &h);
-            ce_meaning m = h.name[0] == '\0' ? CE_MEANS_UNKNOWN : ce_meaning_of(h.name, h.unit);
-            known += m != CE_MEANS_UNKNOWN && m != CE_MEANS_OTHER ? 1 : 0;
-            if (c.n > 0) cells++;
-        }
+        if (r->dialect.delimiter != ' ')
+            known = known_words(r, a->item[i].p, a->item[i].end, &cells);
         if (known >= 2 && cells != r->n_columns)
             return ce_reader_fail(r, CE_E_SYNTAX, a->item[i].line, 0,
                                   "the header names %zu columns, the rows have %zu%s", cells,
@@ -304,6 +344,7 @@ static ce_status read_header(ce_reader *r, const above *a)
 /* ---- preamble ------------------------------------------------------------------------------- */
 
 #define LONGEST_ENTRY 1000
+#define HEAVIEST_G    100.0 /* a sample of more is a slip of the unit                       */
 
 /* Append the cell to text, after a blank. */
 static void join(char *text, size_t room, ce_span c)
@@ -353,9 +394,16 @@ static ce_status note_mass(ce_reader *r, const char *value, size_t line)
     bool sure = mark == NULL || *mark == r->dialect.decimal || strspn(mark + 1, "0123456789") != 3;
     bool ok = ce_parse_value(value, r->dialect.decimal, CE_DIM_MASS, NULL, &g, NULL, NULL) == CE_OK;
     if (!ok && sure) ok = ce_parse_value(value, other, CE_DIM_MASS, NULL, &g, NULL, NULL) == CE_OK;
+    if (ok && g > HEAVIEST_G && isnan(r->o->mass_g))
+        return ce_reader_fail(r, CE_E_DOMAIN, line, 0,
+                              "a sample mass of %g g does not go into a DSC: give --mass", g);
     if (ok && g > 0.0) {
-        if (!isnan(r->run->mass_g)) return CE_OK;
+        if (!isnan(r->run->mass_g)) {
+            if (fabs(g - r->run->mass_g) > 1e-6 * g) r->other_mass_line = line;
+            return CE_OK;
+        }
         r->run->mass_g = g;
+        r->mass_line = line;
         if (ce_run_set_fact(r->run, "sample mass", CE_ORIGIN_STATED, line, "--mass", "%.6g mg",
                             1000.0 * g) != CE_OK)
             return ce_reader_no_memory(r);
@@ -389,7 +437,7 @@ static ce_status note_sign(ce_reader *r, const char *whole, const char *value, b
     return CE_OK;
 }
 
-static ce_status preamble_line(ce_reader *r, const char *p, const char *end, size_t line)
+ce_status ce_reader_entry(ce_reader *r, const char *p, const char *end, size_t line)
 {
     char key[LONGEST_ENTRY], value[LONGEST_ENTRY], whole[2 * LONGEST_ENTRY + 8];
     p = past_comment(p, end);
@@ -415,8 +463,11 @@ static ce_status preamble_line(ce_reader *r, const char *p, const char *end, siz
     double rate;
     if (k == CE_KEY_RATE &&
         ce_parse_value(value, r->dialect.decimal, CE_DIM_RATE, NULL, &rate, NULL, NULL) == CE_OK) {
-        r->rate_K_min = rate;
-        r->rate_line = line;
+        if (isnan(r->rate_K_min)) {
+            r->rate_K_min = rate;
+            r->rate_line = line;
+        } else if (fabs(rate - r->rate_K_min) > 1e-6 * fabs(rate))
+            r->other_rate_line = line;
     }
     return CE_OK;
 }
@@ -426,7 +477,11 @@ static ce_status read_preamble(ce_reader *r)
     size_t line = 1;
     for (const char *p = r->text.begin; p < r->data; line++) {
         const char *e = ce_line_end(p, r->text.end);
-        if (line != r->header_line && line != r->units_line) CE_TRY(preamble_line(r, p, e, line));
+        size_t cells;
+        bool numbers =
+            ce_row_look(p, e, r->dialect.delimiter, r->dialect.decimal, &cells) == CE_ROW_NUMBERS;
+        if (line != r->header_line && line != r->units_line && !numbers)
+            CE_TRY(ce_reader_entry(r, p, e, line));
         p = ce_line_next(e, r->text.end);
     }
     return CE_OK;
@@ -435,11 +490,12 @@ static ce_status read_preamble(ce_reader *r)
 ce_status ce_reader_layout(ce_reader *r)
 {
     above a;
-    find_data(r, &a);
+    find_data(r, r->text.begin, 1, &a);
     if (r->data == NULL)
         return ce_reader_fail(r, CE_E_SYNTAX, 1, 0,
                               "no rows of numbers in at least two columns: not a run, or overrule "
                               "--delimiter and --decimal");
+    CE_TRY(look_below(r, &a));
     CE_TRY(count_columns(r));
     CE_TRY(read_header(r, &a));
     CE_TRY(read_preamble(r));

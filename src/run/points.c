@@ -44,6 +44,8 @@ static ce_status stated_unit(ce_reader *r, size_t column, ce_meaning role, ce_me
 
 /* Values that would be colder than a DSC goes cannot be kelvin. */
 #define COLDEST_K 100.0
+/* Colder than most coolers go, though nitrogen does: worth a word. Common practice. */
+#define COLD_K 180.0
 
 /* The share of a column's values below a limit. */
 static double share_below(const ce_rows *rows, size_t column, double limit)
@@ -450,6 +452,11 @@ static ce_status into_kelvin(points *p)
                 p->T[j]);
         p->T[j] = K;
     }
+    if (!told && strcmp(u->name, "K") == 0 && p->T[0] < COLD_K &&
+        ce_run_warn(r->run, CE_WARNING, ce_lines_find(&r->point_lines, 0), column,
+                    "the run begins at %g K: if the values are °C, give --temperature-unit C",
+                    p->T[0]) != CE_OK)
+        return ce_reader_no_memory(r);
     double start = ce_from_internal(u, p->T[0]);
     if (!told && strcmp(u->name, "°C") == 0 && start > 285.0 && start < 313.0 &&
         ce_run_warn(r->run, CE_WARNING, ce_lines_find(&r->point_lines, 0), column,

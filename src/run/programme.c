@@ -7,9 +7,8 @@
 #include <stdlib.h>
 #include <string.h>
 
-/* A DSC of this kind does not heat faster or, as a rule, slower, K/min. */
+/* A DSC of this kind does not heat faster, K/min. */
 #define FASTEST 300.0
-#define SLOWEST 0.1
 /* Rates that programmes are written with; common practice. */
 #define USUAL_LOW  0.5
 #define USUAL_HIGH 100.0
@@ -90,10 +89,11 @@ static ce_status check_time_unit(ce_reader *r)
             "with times in %s the rate would be %.4g K/min: are they minutes? say "
             "the unit of time with --time-unit",
             r->time_unit->name, rate);
-    if (rate < SLOWEST && ce_run_warn(r->run, CE_WARNING, line, column,
-                                      "with times in %s the rate is only %.3g K/min: overrule with "
-                                      "--time-unit if that is wrong",
-                                      r->time_unit->name, rate) != CE_OK)
+    if ((rate < 0.99 * USUAL_LOW || rate > 1.01 * USUAL_HIGH) && !near(rate, declared, 0.2) &&
+        ce_run_warn(r->run, CE_WARNING, line, column,
+                    "with times in %s the rate is %.3g K/min, which is unusual: overrule with "
+                    "--time-unit if that is wrong",
+                    r->time_unit->name, rate) != CE_OK)
         return ce_reader_no_memory(r);
     return CE_OK;
 }
@@ -187,6 +187,10 @@ ce_status ce_reader_programme(ce_reader *r)
     for (size_t i = 0; i < run->n_segments; i++)
         run->segment[i].line = ce_lines_find(&r->point_lines, run->segment[i].first);
     if (run->time_s == NULL) {
+        if (isnan(r->o->rate_K_min) && r->other_rate_line > 0)
+            return ce_reader_fail(r, CE_E_SYNTAX, r->other_rate_line, 0,
+                                  "another rate than in line %zu, and no time to tell: give --rate",
+                                  r->rate_line);
         if (isnan(rate) && ce_run_warn(run, CE_WARNING, 0, 0,
                                        "no time column and no rate stated: give --rate") != CE_OK)
             return ce_reader_no_memory(r);

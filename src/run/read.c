@@ -76,6 +76,9 @@ static ce_status settle_sign(ce_reader *r)
     run->sign_origin = CE_ORIGIN_OPTION;
     if (sign == CE_SIGN_AUTO) {
         run->sign_origin = CE_ORIGIN_STATED;
+        if (ce_sign_contradicts(r->column[g->signal].title))
+            return ce_reader_fail(r, CE_E_SYNTAX, r->header_line, g->signal + 1,
+                                  "the header says both of the sign of heat flow: give --sign");
         if (header != CE_SIGN_AUTO && r->sign != CE_SIGN_AUTO && header != r->sign)
             return ce_reader_fail(r, CE_E_SYNTAX, r->header_line, g->signal + 1,
                                   "the header says %s, line %zu says %s: give --sign",
@@ -120,6 +123,9 @@ static ce_status scale_signal(ce_reader *r)
             return ce_reader_no_memory(r);
     }
     bool per_mass = run->kind == CE_SIGNAL_POWER && !isnan(run->mass_g);
+    if (per_mass && r->other_mass_line > 0 && isnan(r->o->mass_g))
+        return ce_reader_fail(r, CE_E_SYNTAX, r->other_mass_line, 0,
+                              "another sample mass than in line %zu: give --mass", r->mass_line);
     for (size_t i = 0; u != NULL && i < run->n; i++) {
         double y = ce_to_internal(u, run->signal[i]);
         run->signal[i] = per_mass ? y * 1e-3 / run->mass_g : y;

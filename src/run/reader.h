@@ -74,6 +74,9 @@ typedef struct {
     size_t sign_line;
     double rate_K_min; /* declared by the preamble; NaN                       */
     size_t rate_line;
+    size_t mass_line;       /* that states the mass                                */
+    size_t other_mass_line; /* ... that states another; 0                          */
+    size_t other_rate_line; /* ... that declares another rate; 0                   */
 
     ce_group group[CE_MAX_GROUPS];
     size_t n_groups;
@@ -103,6 +106,8 @@ ce_status ce_reader_layout(ce_reader *r);
  * as n_columns. */
 bool ce_reader_header_cells(const ce_reader *r, const char *p, const char *line_end,
                             ce_span *cells);
+/* What a line above, between or below the rows says: "key: value", words for the sign. */
+ce_status ce_reader_entry(ce_reader *r, const char *p, const char *end, size_t line);
 /* Which columns are used, as far as header and options say. */
 ce_status ce_reader_columns(ce_reader *r);
 /* All rows. */

@@ -175,6 +175,14 @@ static size_t filled_cells(const ce_splitter *s)
     return n;
 }
 
+/* Segments may be named instead of numbered: all that counts is where the name changes (FNV-1a). */
+static double number_of_name(ce_span name)
+{
+    uint64_t h = 14695981039346656037u;
+    for (size_t i = 0; i < name.n; i++) h = (h ^ (unsigned char)name.at[i]) * 1099511628211u;
+    return (double)(h >> 11);
+}
+
 /* The numbers of the split line into s->row (NaN where empty); how many, and the first used cell
  * that is something else. */
 static size_t numbers_of(scanner *s, size_t *wrong)
@@ -189,6 +197,8 @@ static size_t numbers_of(scanner *s, size_t *wrong)
         if (v.n == 0) continue;
         if (ce_parse_number(v.at, v.n, r->dialect.decimal, &s->row[c]))
             numbers++;
+        else if (c == r->segment && r->header_line > 0 && !not_a_number_word(v))
+            s->row[c] = number_of_name(v);
         else if (r->rows.value[c] != NULL && *wrong == CE_NOWHERE)
             *wrong = c;
     }
@@ -251,7 +261,6 @@ static ce_status check_header(scanner *s, const char *p, const char *line_end, b
 {
     ce_reader *r = s->r;
     *is = false;
-    if (r->header_line == 0) return CE_OK;
     ce_span *cell = reallocarray(NULL, r->n_columns, sizeof *cell);
     if (cell == NULL) return ce_reader_no_memory(r);
     size_t same = 0, roles = 0, other = CE_NOWHERE;
@@ -272,6 +281,9 @@ static ce_status check_header(scanner *s, const char *p, const char *line_end, b
         }
     free(cell);
     *is = same > 0 && other == CE_NOWHERE;
+    if (roles >= 2 && r->header_line == 0)
+        return ce_reader_fail(r, CE_E_SYNTAX, s->line, 1,
+                              "a header below rows of numbers without one: split the file");
     if (roles >= 2 && !*is && other != CE_NOWHERE)
         return ce_reader_fail(r, CE_E_SYNTAX, s->line, other + 1,
                               "this header differs from that of line %zu: the tables stacked in a "
@@ -280,10 +292,37 @@ static ce_status check_header(scanner *s, const char *p, const char *line_end, b
     return CE_OK;
 }
 
+/* A row of units below a later header must repeat the first one's. */
+static ce_status check_units(scanner *s, const char *p, const char *line_end, bool *is)
+{
+    ce_reader *r = s->r;
+    size_t units = 0, other = CE_NOWHERE;
+    ce_span *cell = reallocarray(NULL, r->n_columns, sizeof *cell);
+    if (cell == NULL) return ce_reader_no_memory(r);
+    bool all = ce_reader_header_cells(r, p, line_end, cell);
+    for (size_t c = 0; all && c < r->n_columns; c++) {
+        const ce_unit *u;
+        if (cell[c].n == 0) continue;
+        all = ce_header_is_unit(cell[c], &u);
+        units += u != NULL;
+        if (u != r->column[c].head.unit && other == CE_NOWHERE && r->rows.value[c] != NULL)
+            other = c;
+    }
+    free(cell);
+    *is = all && units > 0;
+    if (*is && other != CE_NOWHERE)
+        return ce_reader_fail(r, CE_E_SYNTAX, s->line, other + 1,
+                              "these units differ from those above: the tables stacked in a file "
+                              "must have the same columns; split the file");
+    return CE_OK;
+}
+
 static ce_status text_line(scanner *s, const char *p, const char *line_end)
 {
-    bool is = false;
+    bool is = false, units = false;
     CE_TRY(check_header(s, p, line_end, &is));
+    if (!is) CE_TRY(check_units(s, p, line_end, &units));
+    if (!is && !units) CE_TRY(ce_reader_entry(s->r, p, line_end, s->line));
     if (s->text_line == 0) s->text_line = s->line;
     s->text_is_header = s->text_is_header || is;
     return CE_OK;

@@ -303,25 +303,36 @@ static void drop_empty(char *s)
     while (n > 0 && strchr(" ,;-_", s[n - 1]) != NULL) s[--n] = '\0';
 }
 
-ce_sign ce_sign_of(const char *text, char *clean, size_t room)
+/* What all the words for a direction in a text say together: > 0 exo up, < 0 endo up, 0 nothing;
+ * left, as long as text, gets what is left of it. */
+static int all_signs(const char *text, char *left, size_t room, bool *clash)
 {
-    char low[256], left[256];
+    char low[256];
     size_t n = strlen(text);
     if (n >= sizeof low) n = sizeof low - 1;
+    if (n >= room) n = room - 1;
     for (size_t i = 0; i < n; i++)
         low[i] = (unsigned char)text[i] < 0x80 ? (char)tolower((unsigned char)text[i]) : text[i];
     low[n] = '\0';
     memcpy(left, text, n);
     left[n] = '\0';
     int found = 0, exo = 0;
-    bool clash = false;
     const char *from, *to;
+    *clash = false;
     for (const char *p = low; find_sign(low, p, &from, &to, &exo); p = to) {
-        clash = clash || (found != 0 && found != exo);
+        *clash = *clash || (found != 0 && found != exo);
         found = exo;
         /* One piece is cut out at a time; what was cut before has become blanks. */
         memset(left + (from - low), ' ', (size_t)(to - from));
     }
+    return found;
+}
+
+ce_sign ce_sign_of(const char *text, char *clean, size_t room)
+{
+    char left[256];
+    bool clash;
+    int found = all_signs(text, left, sizeof left, &clash);
     if (clean != NULL && room > 0) {
         drop_empty(left);
         size_t k = strlen(left) < room ? strlen(left) : room - 1;
@@ -330,6 +341,14 @@ ce_sign ce_sign_of(const char *text, char *clean, size_t room)
     }
     if (found == 0 || clash) return CE_SIGN_AUTO;
     return found > 0 ? CE_SIGN_EXO_UP : CE_SIGN_ENDO_UP;
+}
+
+bool ce_sign_contradicts(const char *text)
+{
+    char left[256];
+    bool clash;
+    (void)all_signs(text, left, sizeof left, &clash);
+    return clash;
 }
 
 ce_key ce_key_of(const char *key)

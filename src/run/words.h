@@ -29,6 +29,8 @@ const char *ce_meaning_name(ce_meaning role);
  * nach oben" ...; CE_SIGN_AUTO when nothing. clean, room long, gets the text without those words
  * and without brackets that have become empty; it may be NULL. */
 ce_sign ce_sign_of(const char *text, char *clean, size_t room);
+/* Does a text say both: "endo up, exo up". */
+bool ce_sign_contradicts(const char *text);
 
 /* Preamble keys of interest. */
 typedef enum { CE_KEY_OTHER, CE_KEY_MASS, CE_KEY_RATE, CE_KEY_SAMPLE, CE_KEY_DIRECTION } ce_key;

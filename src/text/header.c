@@ -38,11 +38,29 @@ static bool take(ce_header *h, ce_span text, const char *from, const char *to, c
     return true;
 }
 
-/* "%" or letters with a slash: nobody writes a remark like that. */
+/* The symbol of a unit that has no place in a run: "mV", "MW", "kPa". One letter alone may be the
+ * name of a sample. */
+static bool foreign_symbol(ce_span s)
+{
+    static const char *const prefix[] = {"", "n", "u", "µ", "μ", "m", "c", "h", "k", "M", "G"};
+    static const char *const symbol[] = {"V", "A", "W", "J", "Pa", "bar", "Hz", "Ohm", "eV"};
+    for (size_t i = 0; i < sizeof prefix / sizeof *prefix; i++)
+        for (size_t k = 0; k < sizeof symbol / sizeof *symbol; k++) {
+            size_t a = strlen(prefix[i]), b = strlen(symbol[k]);
+            if (a + b > 1 && a + b == s.n && memcmp(s.at, prefix[i], a) == 0 &&
+                memcmp(s.at + a, symbol[k], b) == 0)
+                return true;
+        }
+    return false;
+}
+
+/* "%", the symbol of a unit, or letters with a slash, also before a bracket ("cal/(s g)"): nobody
+ * writes a remark like that. */
 static bool looks_like_unit(ce_span s)
 {
-    bool slash = memchr(s.at, '/', s.n) != NULL, blank = memchr(s.at, ' ', s.n) != NULL;
-    return s.n > 0 && s.n <= 12 && ((slash && !blank) || (s.n == 1 && *s.at == '%'));
+    const char *slash = memchr(s.at, '/', s.n), *blank = memchr(s.at, ' ', s.n);
+    bool quotient = slash != NULL && (blank == NULL || (slash < blank && slash[1] == '('));
+    return s.n > 0 && ((s.n <= 16 && quotient) || (s.n == 1 && *s.at == '%') || foreign_symbol(s));
 }
 
 static const char *closing(const char *open, const char *end)
@@ -117,11 +135,23 @@ static bool trailing(ce_span t, ce_header *h)
     return false;
 }
 
+/* "HF/mV", "Heat flow mV": a unit that is none of ours, told by its symbol at the end. */
+static bool foreign(ce_span t, ce_header *h)
+{
+    const char *end = t.at + t.n, *p = end;
+    while (p > t.at && strchr(" /,;", p[-1]) == NULL) p--;
+    ce_span u = {p, (size_t)(end - p)};
+    if (p == t.at || !foreign_symbol(u)) return false;
+    while (p > t.at && strchr(" /,;", p[-1]) != NULL) p--;
+    return p > t.at && take(h, t, p, end, u);
+}
+
 void ce_header_split(const char *text, size_t len, ce_header *header)
 {
     *header = (ce_header){0};
     ce_span t = ce_trim((ce_span){text, len});
-    if (bracketed(t, header) || trailing(t, header) || slashed(t, header)) return;
+    if (bracketed(t, header) || trailing(t, header) || slashed(t, header) || foreign(t, header))
+        return;
     copy(header->name, sizeof header->name, t);
 }
 

@@ -258,7 +258,7 @@ ok("stacked-repeated-header.csv", EN + a.text(",") + EN + b.text(","), a.val + b
 ok("stacked-titles.csv", "First heating\n" + EN + a.text(",") + "\nSecond heating\n" + EN + b.text(","), a.val + b.val, segments="H H")
 ok("stacked-blank-line.csv", EN + a.text(",") + "\n" + b.text(","), a.val + b.val, segments="H H")
 ok("stacked-clock-restarts.csv", EN + a.text(",") + a.text(","), a.val + a.val, segments="H H")
-ok("stacked-unmarked.csv", EN + a.text(",") + b.text(","), a.val + b.val, segments="H C H" if False else "H H")
+ok("stacked-unmarked.csv", EN + a.text(",") + b.text(","), a.val + b.val, segments="H H")
 ok("blank-line-within.csv", EN + "".join(",".join(r) + "\n" + ("\n" if i == 20 else "") for i, r in enumerate(a.rows)), a.val)
 ok("double-spaced.csv", EN + "".join(",".join(r) + "\n\n" for r in a.rows), a.val)
 seg = "".join(f"{k},{','.join(r)}\n" for k, tb in ((1, a), (2, b)) for r in tb.rows)
@@ -272,6 +272,22 @@ h, k = Table(ramp(300, 360), order="Ty"), Table(ramp(360, 300)[::-1], order="Ty"
 ok("side-by-side-sorted.csv", "Heating T (°C),Heating HF endo up (W/g),Cooling T (°C),Cooling HF endo up (W/g)\n".replace(" T (", " temperature (").replace("HF", "heat flow") +
    "".join(f"{','.join(r)},{','.join(q)}\n" for r, q in zip(h.rows, k.rows)), h.val + k.val[::-1], segments="H C", options="rate=10",
    warn="turned round")
+named = "".join(f"{k},{','.join(r)}\n" for k, tb in (("heat1", a), ("heat2", b)) for r in tb.rows)
+ok("segment-names.csv", "Segment," + EN + named, a.val + b.val, segments="H H", facts="layout=segments numbered in column 1")
+ok("one-temperature.csv", "Temperature (°C),Heating heat flow endo up (W/g),Cooling heat flow endo up (W/g)\n" +
+   "".join(f"{r[0]},{r[1]},{q[1]}\n" for r, q in zip(h.rows, k.rows)), h.val + k.val[::-1], segments="H C", options="rate=10",
+   facts="layout=2 segments side by side", warn="turned round")
+ok("entries-between.csv", "Sample mass: 6.5 mg\n" + EN.replace("W/g", "mW") + mw.text(",") + "Sample mass: 6.5 mg\n" +
+   EN.replace("W/g", "mW") + mw.text(","), mw.val + mw.val, mass=6.5, segments="H H")
+ok("sign-below.csv", EN.replace(" endo up", "") + Table(H, sign=-1).text(",") + "Heat flow: exo up\n", Table(H, sign=-1).val)
+ok("numbers-above.csv", "Calibration of the furnace\n1,156.60,156.52\n2,231.93,231.70\n3,327.46,327.30\n\n" + EN + t.text(","), t.val,
+   facts="header=names", warn="numbers above the header of line 6 are not used")
+ok("mass-other-overruled.csv", "Sample mass: 6.5 mg\nMass: 7 mg\n" + EN.replace("W/g", "mW") + mw.text(","), mw.val, mass=6.5,
+   options="mass=6.5")
+ok("rate-unusual.csv", EN + Table(ramp(300, 360, 180), digits=(4, 3, 5)).text(","), Table(ramp(300, 360, 180), digits=(4, 3, 5)).val,
+   warn="which is unusual")
+ok("kelvin-very-cold.csv", "Time (s),Temperature (K),Heat flow endo up (W/g)\n" + Table(ramp(120, 180), Tu="K").text(","),
+   Table(ramp(120, 180), Tu="K").val, warn="if the values are °C")
 
 # ---- traps: fillers, damaged rows, empty cells, irregular and repeated values
 f = Table(H, Tu="K")
@@ -340,6 +356,23 @@ bad("h-decimal-comma-in-comma.csv", EN + "".join(",".join(x.replace(".", ",") fo
 bad("h-unknown-unit.csv", EN.replace("W/g", "BTU/h") + R, 1, 3, "unknown unit 'BTU/h'")
 bad("h-unknown-temperature-unit.csv", EN.replace("°C", "°Ré").replace("(°Ré)", "[°Ré]") + R, 1, 2, "unknown unit")
 bad("h-megawatt.csv", EN.replace("(W/g)", "[MW]") + R, 1, 3, "unknown unit 'MW'")
+for unit in ("mV", "MW", "cal/(s g)", "J/(mol K)"):
+    bad("h-signal-in-" + "".join(x for x in unit if x.isalpha()) + ".csv", EN.replace("W/g", unit) + R, 1, 3, f"unknown unit '{unit}'")
+bad("h-slash-unit.csv", "t/s,T/°C,HF/mV\n" + R, 1, 3, "unknown unit 'mV'")
+bad("h-sign-both.csv", EN.replace("endo up", "endo up exo up") + R, 1, 3, "says both")
+bad("h-two-masses.csv", "Sample mass: 6.5 mg\nMass: 7 mg\n" + EN.replace("W/g", "mW") + R, 2, 0, "another sample mass than in line 1")
+bad("h-mass-changes.csv", "Sample mass: 6.5 mg\n" + EN.replace("W/g", "mW") + R + "Sample mass: 7 mg\n" + EN.replace("W/g", "mW") + R, 43, 0,
+    "another sample mass than in line 1")
+bad("h-mass-kilogram.csv", "Sample mass: 6.5 kg\n" + EN.replace("W/g", "mW") + R, 1, 0, "does not go into a DSC")
+bad("h-units-change.csv", "Time,Temperature,Heat flow endo up\ns,°C,W/g\n" + R + "Time,Temperature,Heat flow endo up\nmin,°C,W/g\n" + R, 44, 1,
+    "these units differ")
+bad("h-groups-differ.csv", EN.strip() + "," + EN.replace("(s)", "(min)") + "".join(f"{l},{l}\n" for l in R.split("\n")[:-1]), 1, 6,
+    "choose with --signal-column")
+bad("h-group-signs-differ.csv", EN.strip() + "," + EN.replace("endo", "exo") + "".join(f"{l},{l}\n" for l in R.split("\n")[:-1]), 1, 6,
+    "choose with --signal-column")
+bad("h-late-header.csv", "".join(",".join(r) + "\n" for _ in range(6) for r in t.rows) + EN + R, 241, 1, "a header below rows of numbers")
+bad("h-two-rates.csv", "Rate: 10 K/min\nHeating rate: 20 K/min\nTemperature (°C),Heat flow endo up (W/g)\n" +
+    "".join(f"{r[1]},{r[2]}\n" for r in t.rows), 2, 0, "another rate than in line 1")
 bad("h-swapped-units.csv", "Time (s),Temperature,Heat flow endo up\ns,W/g,°C\n" + R, 2, 2, "is a unit of heat flow per mass, not of temperature")
 bad("h-kelvin-is-celsius.csv", "Time (s),Temperature [K],Heat flow endo up (W/g)\n" + R, 2, 2, "look like °C")
 bad("h-below-zero-kelvin.csv", put(10, "92.31,-300.0,0.2\n"), 12, 2, "not possible")
@@ -353,7 +386,7 @@ bad("h-time-goes-back.csv", put(30, "200.0,73.0,0.3\n"), 32, 1, "time goes back"
 bad("h-temperature-unit-open.csv", "Time (s),Temperature,Heat flow endo up (W/g)\n" + f.text(","), 1, 2, "give --temperature-unit")
 bad("h-time-unit-open.csv", "Time,Temperature (°C),Heat flow endo up (W/g)\n" + Table(ramp(300, 360, 60)).text(","), 1, 1,
     "give --time-unit")
-bad("h-two-signals.csv", "Temperature (°C),Heating 1 heat flow (W/g),Cooling heat flow (W/g)\n" +
+bad("h-two-signals.csv", "Temperature (°C),Heat flow 1 (W/g),Heat flow 2 (W/g)\n" +
     "".join(f"{r[1]},{r[2]},{r[2]}\n" for r in t.rows), 1, 3, "choose with --signal-column")
 bad("h-two-temperatures.csv", "Time (s),Temperature 1 (°C),Temperature 2 (°C),Heat flow (W/g)\n" +
     "".join(f"{r[0]},{r[1]},{r[1]},{r[2]}\n" for r in t.rows), 1, 3, "choose with --temperature-column")
