@@ -131,6 +131,17 @@ static bool goes_on(const double *t, const double *T, size_t n, size_t j)
     return t[j] >= t[j - 1] && t[j] - t[j - 1] <= 5.0 * dt;
 }
 
+/* One time out of line, a digit or a mark lost: the ones around it go on without it. */
+static bool stray_time(const points *p, size_t from, size_t j, size_t *at)
+{
+    if (j + 1 < p->n && p->t[j + 1] > p->t[j - 1]) {
+        *at = j;
+        return true;
+    }
+    *at = j - 1;
+    return j >= from + 2 && p->t[j] > p->t[j - 2];
+}
+
 /* A clock that starts again begins a segment; one that goes back is broken. */
 static ce_status check_clock(points *p, size_t from, size_t j, bool *restart)
 {
@@ -138,6 +149,13 @@ static ce_status check_clock(points *p, size_t from, size_t j, bool *restart)
     *restart = false;
     if (p->t == NULL || j == from || p->t[j] >= p->t[j - 1]) return CE_OK;
     double begin = p->t[from], last = p->t[j - 1];
+    size_t at;
+    if (stray_time(p, from, j, &at))
+        return ce_reader_fail(r, CE_E_DOMAIN, ce_lines_find(&r->point_lines, at),
+                              r->group[0].time + 1,
+                              "time jumps to %g and back: the row is damaged, or --time-column is "
+                              "another",
+                              p->t[at]);
     if (p->t[j] <= begin + 0.02 * (last - begin)) {
         *restart = true;
         return CE_OK;

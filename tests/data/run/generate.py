@@ -382,7 +382,10 @@ bad("h-huge-time.csv", put(39, "1e300,86.85,0.3\n"), 41, 1, "a time of 1e+300")
 bad("h-minutes-under-s.csv", EN + tm.text(","), 1, 1, "are they minutes")
 bad("h-minutes-against-declared.csv", "Heating rate: 2 K/min\n" + EN + Table(ramp(300, 360, 2), tu="min", digits=(5, 3, 5)).text(","), 2, 1,
     "declares 2")
-bad("h-time-goes-back.csv", put(30, "200.0,73.0,0.3\n"), 32, 1, "time goes back")
+bad("h-time-without-point.csv", EN + "".join(L[:20]) + L[20].replace(".", "", 1) + "".join(L[21:]), 22, 1, "time jumps to 18462 and back")
+bad("h-time-minus.csv", EN + "".join(L[:20]) + "-" + "".join(L[20:]), 22, 1, "time jumps to -184.62 and back")
+bad("h-time-stray.csv", put(30, "200.0,73.0,0.3\n"), 32, 1, "time jumps to 200 and back")
+bad("h-time-goes-back.csv", EN + "".join(L[:30] + L[27:]), 32, 1, "time goes back from 267.69 to 249.23")
 bad("h-temperature-unit-open.csv", "Time (s),Temperature,Heat flow endo up (W/g)\n" + f.text(","), 1, 2, "give --temperature-unit")
 bad("h-time-unit-open.csv", "Time,Temperature (°C),Heat flow endo up (W/g)\n" + Table(ramp(300, 360, 60)).text(","), 1, 1,
     "give --time-unit")
