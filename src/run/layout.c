@@ -192,7 +192,7 @@ static size_t recognised(const ce_reader *r, const ce_span *cell)
         (void)ce_sign_of(title, clean, sizeof clean);
         ce_header_split(clean, strlen(clean), &h);
         ce_meaning m = h.name[0] == '\0' ? CE_MEANS_UNKNOWN : ce_meaning_of(h.name, h.unit);
-        n += m != CE_MEANS_UNKNOWN && m != CE_MEANS_OTHER;
+        n += ce_meaning_is_quantity(m);
     }
     return n;
 }
@@ -251,7 +251,7 @@ static size_t known_words(const ce_reader *r, const char *p, const char *end, si
         (void)ce_sign_of(title, title, sizeof title);
         ce_header_split(title, strlen(title), &h);
         ce_meaning m = h.name[0] == '\0' ? CE_MEANS_UNKNOWN : ce_meaning_of(h.name, h.unit);
-        known += m != CE_MEANS_UNKNOWN && m != CE_MEANS_OTHER ? 1 : 0;
+        known += ce_meaning_is_quantity(m) ? 1 : 0;
         if (c.n > 0) ++*cells;
     }
     return known;

@@ -275,7 +275,7 @@ static ce_status check_header(scanner *s, const char *p, const char *line_end, b
             (void)ce_sign_of(text, text, sizeof text);
             ce_header_split(text, strlen(text), &h);
             ce_meaning m = ce_meaning_of(h.name, h.unit);
-            roles += m != CE_MEANS_UNKNOWN && m != CE_MEANS_OTHER;
+            roles += ce_meaning_is_quantity(m);
             same += equal;
             if (!equal && other == CE_NOWHERE && r->rows.value[c] != NULL) other = c;
         }

@@ -192,6 +192,11 @@ ce_meaning ce_meaning_of(const char *name, const ce_unit *unit)
     return signals ? other : CE_MEANS_UNKNOWN;
 }
 
+bool ce_meaning_is_quantity(ce_meaning role)
+{
+    return role != CE_MEANS_UNKNOWN && role != CE_MEANS_OTHER && role != CE_MEANS_SEGMENT;
+}
+
 const char *ce_meaning_name(ce_meaning role)
 {
     switch (role) {

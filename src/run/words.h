@@ -23,6 +23,8 @@ typedef enum {
 ce_meaning ce_meaning_of(const char *name, const ce_unit *unit);
 /* May a unit stand with a role at all. */
 bool ce_meaning_fits(ce_meaning role, const ce_unit *unit);
+/* Is it something measured: a title such as "Segment 2: ramp" is full of words, but names none. */
+bool ce_meaning_is_quantity(ce_meaning role);
 const char *ce_meaning_name(ce_meaning role);
 
 /* What a text says about the direction of heat flow: "exo up", "endo-down", "exo ↑", "endotherm
