@@ -135,6 +135,18 @@ static bool trailing(ce_span t, ce_header *h)
     return false;
 }
 
+/* "Heat flow / cal/(s g)": what stands behind a slash between blanks is a unit, known or not. */
+static bool behind_slash(ce_span t, ce_header *h)
+{
+    const char *end = t.at + t.n;
+    for (const char *p = t.at + 1; p + 2 < end; p++) {
+        if (p[0] != '/' || p[-1] != ' ' || p[1] != ' ') continue;
+        ce_span u = ce_trim((ce_span){p + 1, (size_t)(end - p - 1)});
+        return looks_like_unit(u) && take(h, t, p, end, u);
+    }
+    return false;
+}
+
 /* "HF/mV", "Heat flow mV": a unit that is none of ours, told by its symbol at the end. */
 static bool foreign(ce_span t, ce_header *h)
 {
@@ -150,7 +162,8 @@ void ce_header_split(const char *text, size_t len, ce_header *header)
 {
     *header = (ce_header){0};
     ce_span t = ce_trim((ce_span){text, len});
-    if (bracketed(t, header) || trailing(t, header) || slashed(t, header) || foreign(t, header))
+    if (bracketed(t, header) || behind_slash(t, header) || trailing(t, header) ||
+        slashed(t, header) || foreign(t, header))
         return;
     copy(header->name, sizeof header->name, t);
 }

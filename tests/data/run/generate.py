@@ -359,6 +359,7 @@ bad("h-unknown-temperature-unit.csv", EN.replace("°C", "°Ré").replace("(°Ré
 bad("h-megawatt.csv", EN.replace("(W/g)", "[MW]") + R, 1, 3, "unknown unit 'MW'")
 for unit in ("mV", "MW", "cal/(s g)", "J/(mol K)"):
     bad("h-signal-in-" + "".join(x for x in unit if x.isalpha()) + ".csv", EN.replace("W/g", unit) + R, 1, 3, f"unknown unit '{unit}'")
+bad("h-slash-blank-unit.csv", "Time / s,Temperature / °C,Heat flow / cal/(s g)\n" + R, 1, 3, "unknown unit 'cal/(s g)'")
 bad("h-slash-unit.csv", "t/s,T/°C,HF/mV\n" + R, 1, 3, "unknown unit 'mV'")
 bad("h-sign-both.csv", EN.replace("endo up", "endo up exo up") + R, 1, 3, "says both")
 bad("h-two-masses.csv", "Sample mass: 6.5 mg\nMass: 7 mg\n" + EN.replace("W/g", "mW") + R, 2, 0, "another sample mass than in line 1")
