@@ -1,0 +1,68 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later
+ * One segment as a curve over temperature, and the relaxation model of its step fitted to it. */
+#ifndef CE_TRANSITION_STEP_H
+#define CE_TRANSITION_STEP_H
+
+#include "transition/relax.h"
+
+#include <chainend/transition.h>
+
+#include <stdbool.h>
+#include <stddef.h>
+
+/* A segment on strictly rising temperature, the signal turned so that the liquid lies above the
+ * glass: endothermic up on heating, exothermic up on cooling. */
+typedef struct {
+    size_t n;
+    double *T, *y;   /* owned                                                                   */
+    bool cooling;    /* measured on the way down                                                */
+    double noise;    /* standard deviation of one point, robust; 0 is possible                  */
+    double effective; /* independent points per point, 0 < e <= 1 (autocorrelation)             */
+} ce_curve;
+
+/* Means over cells of temperature, fine near the step, coarse away from it. */
+typedef struct {
+    size_t n;
+    double *low, *high; /* the cells                                                            */
+    double *T, *y, *w;  /* mean temperature, mean signal, number of points                      */
+} ce_cells;
+
+enum { CE_SHAPES = 9, CE_LINEAR = 6, CE_FREE = CE_SHAPES + CE_LINEAR };
+
+/* The fitted model: Cp-like signal = glass line + step * (step height along Tf) + start-up. */
+typedef struct {
+    bool cooling, curved;
+    bool aged;                 /* annealing and instrument lag are fitted too                   */
+    double ref_K;              /* origin of the lines                                           */
+    double fine_K;             /* step of the integration near the transition                   */
+    double hook_from_K;        /* where the segment starts                                      */
+    double shape[CE_SHAPES];   /* see model.c                                                   */
+    double linear[CE_LINEAR];
+    double centre[CE_SHAPES];  /* of the prior                                                  */
+    double sigma;              /* sd of a point used for the weights                            */
+    double misfit;             /* reduced chi-square against sigma                              */
+    double cov[CE_FREE][CE_FREE]; /* of shape and linear parameters at sigma                    */
+    size_t iterations;
+} ce_model;
+
+/* Lines in the curve's own orientation: y = a + b (T - ref). */
+typedef struct {
+    double ref_K, glass_a, glass_b, liquid_a, liquid_b;
+} ce_lines;
+
+ce_status ce_cells_make(const ce_curve *curve, double from_K, double to_K, double centre_K,
+                        ce_cells *cells);
+void ce_cells_free(ce_cells *cells);
+
+/* Fit from a start: ce_model_start() or an earlier fit; sigma and the kind of model are taken from
+ * the model as it comes in. CE_OK | CE_E_NOFIT | CE_E_NOMEM. */
+ce_status ce_model_fit(const ce_cells *cells, double step, ce_model *model);
+/* A first guess for a step of this half-step temperature and width; sigma > 0. */
+ce_model ce_model_start(bool cooling, double centre_K, double width_K, double sigma,
+                        double hook_from_K);
+/* The model at n cells, with the lines it is built on. */
+void ce_model_curve(const ce_model *model, size_t n, const double *low, const double *high,
+                    double *y);
+ce_lines ce_model_lines(const ce_model *model);
+
+#endif
