@@ -163,6 +163,39 @@ typedef struct {
 CE_API ce_status ce_working_range(const ce_fit *fit, size_t runs, double level, size_t n,
                                   const double *mn_g_mol, ce_range_row *row, ce_error *err);
 
+/* ---- Monte Carlo cross-check ----------------------------------------------------------------- */
+
+typedef struct {
+    uint64_t seed;     /* default 1                                                              */
+    size_t max_trials; /* 1e4 to 1e8; default 4 000 000 (8 bytes each)                           */
+    bool normal;       /* variances taken as known, so that the limits are Fieller's with the normal
+                          factor; default false: scatter with finite degrees of freedom is drawn as
+                          Student's t, JCGM 101:2008 6.4.9                                         */
+} ce_monte_carlo_options;
+CE_API ce_monte_carlo_options ce_monte_carlo_options_default(void);
+
+/* Mn has no mean and no variance here (1/z with a density at z = 0): only quantiles are given. */
+typedef struct {
+    size_t trials;
+    bool settled;                 /* the stopping rule was met before max_trials               */
+    double median_g_mol;          /* infinite when more than half the trials have no finite Mn */
+    double low_g_mol, high_g_mol; /* probabilistically symmetric; high NaN = open              */
+    double p_none;                /* probability that no finite Mn explains the reading        */
+    double z_mean, z_u;           /* of 1/Mn, "no finite Mn" counted as 0, mol/g               */
+    double z_delta;               /* numerical tolerance of z: the limits are this stable      */
+    double level;
+} ce_monte_carlo;
+
+/* ce_monte_carlo_mn - propagate distributions through the relation, JCGM 101:2008.
+ *   Parameters multivariate normal (run part, excess part, certificate part, what is common), reading
+ *   normal or t. Blocks of max(1e4, 100/(1 - level)) trials until twice the standard error of mean,
+ *   u and both limits of 1/Mn is below half a unit of the second digit of u (7.9).
+ *   The same seed gives the same digits. options NULL = defaults.
+ *   ret  CE_OK | as ce_estimate_mn */
+CE_API ce_status ce_monte_carlo_mn(const ce_fit *fit, const ce_unknown *unknown, double level,
+                                   const ce_monte_carlo_options *options, ce_monte_carlo *result,
+                                   ce_error *err);
+
 #ifdef __cplusplus
 }
 #endif

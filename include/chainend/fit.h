@@ -202,7 +202,8 @@ typedef struct {
     double excess_tau_K; /* between-sample s.d. carried by an unknown too; 0 = none        */
     double excess_r;     /* relative Mn uncertainty used instead of the stated; 0 = none   */
     double excess_nu;    /* its degrees of freedom; inf when none                          */
-    double excess_p;     /* p of the test for excess, run scatter as uncertain as it is    */
+    double excess_p;     /* p of the F test for excess, dof and excess_p_nu degrees of freedom */
+    double excess_p_nu;  /* of the variances, as uncertain as the run scatter makes them   */
     double lack_of_fit_F, lack_of_fit_p;       /* NaN without repeats                  */
     double lack_of_fit_dof1, lack_of_fit_dof2; /* see ce_fit_lack_of_fit_meaning()     */
     double curvature_F, curvature_p;           /* added curvature term in the weighted fit; NaN */

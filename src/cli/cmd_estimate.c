@@ -1,4 +1,5 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
+#include "cli/answers.h"
 #include "cli/asked.h"
 #include "cli/calibration.h"
 #include "cli/cli.h"
@@ -51,16 +52,6 @@ static void mismatch(const arguments *a, ce_answer *answer, const char *path, co
                                     "%s; --despite overrules, and marks the result", text);
 }
 
-static void answer_mn(const arguments *a, const cli_calibration *c, const ce_unknown *unknown,
-                      ce_answer *answer)
-{
-    (void)a;
-    if (answer->status != CE_OK) return;
-    answer->status = ce_estimate_mn(&c->fit, unknown, 0.0, &answer->mn, &answer->error);
-    if (answer->status == CE_OK)
-        (void)ce_estimate_hint(&c->fit, unknown, &answer->mn, answer->hint, sizeof answer->hint);
-}
-
 static void answer_question(const arguments *a, const cli_calibration *c, const cli_asked *asked,
                             ce_answer *answer)
 {
@@ -84,7 +75,7 @@ static void answer_question(const arguments *a, const cli_calibration *c, const 
     unknown.tg_u_K = asked->tg_u_K;
     unknown.mean_of = a->mean_of;
     answer->readings = asked->n * a->mean_of;
-    answer_mn(a, c, &unknown, answer);
+    cli_answer(c, &unknown, answer);
 }
 
 /* ---- runs on the command line --------------------------------------------------------------- */
@@ -125,55 +116,19 @@ static void answer_run(const arguments *a, const cli_calibration *c, const char 
             answer->status =
                 ce_fail_at(&answer->error, CE_E_REFUSED, path, 0, 0, "this run has no %s",
                            ce_construction_name(c->series.construction));
-        answer_mn(a, c, &unknown, answer);
+        cli_answer(c, &unknown, answer);
     } else
         answer->error = e.error;
     ce_evaluation_free(&e);
 }
 
-/* ---- unknowns of the series ----------------------------------------------------------------- */
-
-static bool same_or_absent(const double *u, size_t n)
-{
-    for (size_t i = 1; i < n; i++)
-        if (u[i] != u[0] && !(isnan(u[i]) && isnan(u[0]))) return false;
-    return true;
-}
-
-static void answer_sample(const arguments *a, const cli_calibration *c, const ce_sample *s,
-                          ce_answer *answer)
-{
-    *answer = (ce_answer){.name = strdup(s->name), .readings = s->n_used, .error = CE_ERROR_INIT};
-    if (s->n_used == 0) {
-        answer->status =
-            ce_fail_at(&answer->error, CE_E_REFUSED, c->series.path, c->series.row[s->row[0]].line,
-                       0, "unknown '%.60s' has no usable reading", s->name);
-        return;
-    }
-    ce_unknown unknown = ce_unknown_default();
-    unknown.n = s->n_used;
-    unknown.tg_K = s->tg_K;
-    unknown.mw_over_mn = c->series.row[s->row[0]].dispersity;
-    unknown.chain_ends = s->chain_ends;
-    unknown.reading_u_K = s->reading_u_K;
-    if (same_or_absent(s->tg_u_K, s->n_used)) unknown.tg_u_K = s->tg_u_K[0];
-    answer_mn(a, c, &unknown, answer);
-}
-
 /* ---- the whole ------------------------------------------------------------------------------ */
-
-static size_t count_unknowns(const ce_series *series)
-{
-    size_t n = 0;
-    for (size_t k = 0; k < series->n_samples; k++) n += series->sample[k].role == CE_UNKNOWN;
-    return n;
-}
 
 static ce_answer *answer_all(const arguments *a, const cli_calibration *c, char **run,
                              size_t n_runs, size_t *n)
 {
     bool series = a->questions.n == 0 && n_runs == 0;
-    *n = a->questions.n + n_runs + (series ? count_unknowns(&c->series) : 0);
+    *n = a->questions.n + n_runs + (series ? cli_count_unknowns(&c->series) : 0);
     ce_answer *answer = calloc(*n > 0 ? *n : 1, sizeof *answer);
     if (answer == NULL) return NULL;
     size_t k = 0;
@@ -182,23 +137,14 @@ static ce_answer *answer_all(const arguments *a, const cli_calibration *c, char 
     for (size_t i = 0; i < n_runs; i++) answer_run(a, c, run[i], &answer[k++]);
     for (size_t i = 0; series && i < c->series.n_samples; i++)
         if (c->series.sample[i].role == CE_UNKNOWN)
-            answer_sample(a, c, &c->series.sample[i], &answer[k++]);
+            cli_answer_sample(c, &c->series.sample[i], &answer[k++]);
     return answer;
 }
 
 static int deliver(const arguments *a, const cli_calibration *c, const ce_answer *answer, size_t n,
                    int status)
 {
-    ce_estimate_result result = {.n = n,
-                                 .answer = answer,
-                                 .fit = &c->fit,
-                                 .construction = c->series.construction,
-                                 .rate_K_min = c->series.rate_K_min,
-                                 .history = c->series.history,
-                                 .polymer = c->series.polymer,
-                                 .scope = c->series.scope,
-                                 .ceiling_tg_K = c->ceiling_tg_K,
-                                 .ceiling_mn_g_mol = c->ceiling_mn_g_mol};
+    ce_estimate_result result = cli_estimate_result(c, answer, n);
     size_t refused = 0;
     for (size_t i = 0; i < n; i++) {
         if (answer[i].status == CE_OK) continue;
@@ -228,8 +174,7 @@ static int run(const arguments *a, int argc, char **argv)
         status = XIT_FAILED;
     } else
         status = deliver(a, &c, answer, n, status);
-    for (size_t i = 0; i < n && answer != NULL; i++) free(answer[i].name);
-    free(answer);
+    cli_answers_free(answer, n);
     cli_calibration_free(&c);
     return status;
 }

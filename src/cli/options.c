@@ -1,6 +1,7 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
 #include "cli/cli.h"
 
+#include "output/text.h"
 #include "text/number.h"
 
 #include <errno.h>
@@ -16,26 +17,6 @@
 static const cli_option help_option = {
     .name = "help", .letter = 'h', .help = "show this", .kind = CLI_FLAG};
 
-static void put_wrapped(const char *s, size_t indent, size_t width)
-{
-    size_t column = indent;
-    while (*s != '\0') {
-        size_t n = strcspn(s, " ");
-        if (column > indent && column + 1 + n > width) {
-            printf("\n%*s", (int)indent, "");
-            column = indent;
-        } else if (column > indent) {
-            putchar(' ');
-            column++;
-        }
-        printf("%.*s", (int)n, s);
-        column += n;
-        s += n;
-        s += strspn(s, " ");
-    }
-    putchar('\n');
-}
-
 static void put_option(const cli_option *o)
 {
     char head[64];
@@ -44,16 +25,16 @@ static void put_option(const cli_option *o)
                    o->argument ? " " : "", o->argument ? o->argument : "");
     printf("  %-32s", head);
     if (strlen(head) > 30) printf("\n%34s", "");
-    put_wrapped(o->help, 34, 98);
+    ce_text_wrap(stdout, o->help, 34, 34, CE_TEXT_WIDTH);
 }
 
 static void put_help(const cli_command *command, const cli_option *option, size_t n)
 {
     printf("usage: chainend %s [options] %s\n\n", command->name, command->operands);
-    put_wrapped(command->summary, 0, 98);
+    ce_text_wrap(stdout, command->summary, 0, 0, CE_TEXT_WIDTH);
     if (command->detail[0] != '\0') {
         putchar('\n');
-        put_wrapped(command->detail, 0, 98);
+        ce_text_wrap(stdout, command->detail, 0, 0, CE_TEXT_WIDTH);
     }
     printf("\noptions:\n");
     for (size_t i = 0; i < n; i++) put_option(&option[i]);

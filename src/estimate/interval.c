@@ -128,12 +128,13 @@ ce_status ce_invert_test(const ce_walk *walk, ce_set *set, ce_error *err)
     double ln_low = settle_low(walk), before = ln_low, width = walk->ln_high - ln_low;
     size_t n = walk->nodes < 16 ? 16 : walk->nodes;
     bool was = is_inside(walk->at_zero), estimate_due = isfinite(walk->ln_estimate);
-    for (size_t i = 0; i <= n; i++) {
+    for (size_t i = 0; i <= n;) {
         double here = ln_low + width * (double)i / (double)n;
         if (estimate_due && walk->ln_estimate <= here) { /* a node of its own: sets can be narrow */
             here = fmax(walk->ln_estimate, before);
             estimate_due = false;
-            i--;
+        } else {
+            i++;
         }
         double value = walk->outside(here, walk->context);
         if (isnan(value))

@@ -34,11 +34,11 @@ static void put_verdict(const ce_fit_result *result, FILE *to)
 {
     const ce_fit *fit = result->fit;
     char a[CE_NUMBER_ROOM], b[CE_NUMBER_ROOM];
-    fprintf(to, "%s, fitted to %zu standards (%zu runs)\n",
+    fprintf(to, "%s\nfitted to %zu standards (%zu runs)\n",
             ce_relation_formula(fit->options.relation), fit->n_points, fit->n_runs);
     char *polymer =
-        ce_text_shown(result->polymer == NULL ? "polymer not stated" : result->polymer, 60);
-    fprintf(to, "%s; Tg is ", polymer == NULL ? "" : polymer);
+        ce_text_shown(result->polymer == NULL ? "polymer not stated" : result->polymer, 90);
+    fprintf(to, "%s\nTg is ", polymer == NULL ? "" : polymer);
     free(polymer);
     ce_write_definition(result->construction, result->rate_K_min, result->history, to);
     fputs("\n\n", to);
@@ -119,11 +119,14 @@ static void put_scatter(const ce_fit *fit, FILE *to)
             to,
             "certificates         u(Mn) of %s %% used, more than stated, as the scatter demands\n",
             ce_significant(a, 100.0 * fit->excess_r, 2));
-    if (isfinite(fit->lack_of_fit_p))
-        fprintf(to, "between-sample test  F %s, p %s (%s)\n",
-                ce_significant(a, fit->lack_of_fit_F, 3),
-                ce_significant((char[CE_NUMBER_ROOM]){0}, fit->lack_of_fit_p, 2),
-                ce_fit_lack_of_fit_meaning(fit));
+    if (isfinite(fit->lack_of_fit_p)) {
+        char b[CE_NUMBER_ROOM], text[400];
+        (void)snprintf(text, sizeof text, "F %s, p %s: %s",
+                       ce_significant(a, fit->lack_of_fit_F, 3),
+                       ce_significant(b, fit->lack_of_fit_p, 2), ce_fit_lack_of_fit_meaning(fit));
+        fputs("between-sample test  ", to);
+        ce_text_wrap(to, text, 21, 21, CE_TEXT_WIDTH);
+    }
     if (isfinite(fit->curvature_p))
         fprintf(to, "curvature            F %s, p %s (a further term in the weighted fit)\n",
                 ce_significant(a, fit->curvature_F, 3),
@@ -156,14 +159,6 @@ static ce_status put_comparison(const ce_fit *fit, FILE *to, bool colour)
     }
     fputs("\nother relations fitted to the same series\n", to);
     ce_status st = ce_sheet_print(&sheet, to, 0, colour);
-    if (st == CE_OK && isfinite(fit->spread_tg_inf_low_K)) {
-        char a[CE_NUMBER_ROOM], b[CE_NUMBER_ROOM];
-        fprintf(to,
-                "Among the plausible ones Tg_inf runs from %s to %s °C: the choice of relation is "
-                "part of the doubt.\n",
-                ce_fixed(a, ce_degC_from_K(fit->spread_tg_inf_low_K), 1),
-                ce_fixed(b, ce_degC_from_K(fit->spread_tg_inf_high_K), 1));
-    }
     return st;
 }
 
@@ -174,9 +169,9 @@ ce_status ce_write_fit_text(const ce_fit_result *result, FILE *to, bool colour)
     if (st != CE_OK) return st;
     put_scatter(result->fit, to);
     st = put_comparison(result->fit, to, colour);
+    ce_remarks remarks = {.to = to, .heading = "remarks"};
     for (size_t i = 0; i < result->fit->warnings.n; i++)
-        fprintf(to, "%s%s\n", i == 0 ? "\nremarks\n  " : "  ",
-                result->fit->warnings.item[i].at.message);
+        ce_remark(&remarks, NULL, result->fit->warnings.item[i].at.message);
     return st;
 }
 

@@ -46,7 +46,7 @@ static void put_sample(ce_sheet *sheet, const ce_series *series, const ce_sample
     else
         ce_sheet_cell(sheet, "%s", ce_significant(text, 100.0 * s->mn_u_g_mol / s->mn_g_mol, 2));
     ce_sheet_cell(sheet, s->n_used == s->n_rows ? "%zu" : "%zu of %zu", s->n_used, s->n_rows);
-    ce_sheet_cell(sheet, "%s", ce_celsius(text, s->mean_K, isnan(u) ? 0.01 : u));
+    ce_sheet_cell(sheet, "%s", ce_celsius(text, s->mean_K, isnan(u) ? 0.1 : u));
     if (isnan(u))
         ce_sheet_none(sheet);
     else
@@ -54,32 +54,22 @@ static void put_sample(ce_sheet *sheet, const ce_series *series, const ce_sample
     ce_sheet_cell(sheet, "%s", ce_fixed(text, s->sd_K, isnan(u) ? 2 : ce_decimals(u)));
 }
 
-static bool is_of_interest(const ce_series_row *row)
-{
-    return !row->used || row->n_flags > 0;
-}
-
 static void put_remarks(const ce_series *series, FILE *to)
 {
-    bool any = false;
+    ce_remarks remarks = {.to = to, .heading = "remarks"};
     for (size_t i = 0; i < series->n_rows; i++) {
         const ce_series_row *row = &series->row[i];
-        if (!is_of_interest(row)) continue;
-        char *name = ce_text_shown(row->run == NULL ? row->sample : row->run, 48);
-        if (!any) fputs("\nremarks\n", to);
-        any = true;
+        const char *name = row->run == NULL ? row->sample : row->run;
+        char text[400];
         if (!row->used) {
-            char *reason = ce_text_shown(row->reason == NULL ? "" : row->reason, 0);
-            fprintf(to, "  %s: left out: %s\n", name == NULL ? "?" : name,
-                    reason == NULL ? "" : reason);
-            free(reason);
+            (void)snprintf(text, sizeof text, "left out: %s",
+                           row->reason == NULL ? "" : row->reason);
+            ce_remark(&remarks, name, text);
         }
         for (size_t f = 0; f < row->n_flags; f++) {
-            char text[256];
             ce_flag_text(&row->flags[f], text, sizeof text);
-            fprintf(to, "  %s: %s\n", name == NULL ? "?" : name, text);
+            ce_remark(&remarks, name, text);
         }
-        free(name);
     }
 }
 
@@ -95,8 +85,9 @@ ce_status ce_write_series_text(const ce_series *series, FILE *to, bool colour)
         standards += series->sample[k].role == CE_STANDARD && series->sample[k].n_used > 0;
         runs += series->sample[k].n_used;
     }
-    fprintf(to, "%zu standards to fit, %zu samples and %zu measurements in all\n", standards,
-            series->n_samples, runs);
+    fprintf(to, "%zu standard%s to fit, %zu sample%s and %zu measurement%s in all\n", standards,
+            standards == 1 ? "" : "s", series->n_samples, series->n_samples == 1 ? "" : "s", runs,
+            runs == 1 ? "" : "s");
     char *polymer =
         ce_text_shown(series->polymer == NULL ? "polymer not stated" : series->polymer, 70);
     fprintf(to, "%s; Tg is ", polymer == NULL ? "" : polymer);

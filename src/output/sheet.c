@@ -157,6 +157,21 @@ ce_status ce_sheet_print(ce_sheet *table, FILE *to, int indent, bool colour)
     return st;
 }
 
+void ce_remark(ce_remarks *remarks, const char *subject, const char *text)
+{
+    char *name = subject == NULL ? NULL : ce_text_shown(subject, 40), *line = NULL;
+    char *clean = ce_text_shown(text, 0);
+    if (!remarks->any) fprintf(remarks->to, "\n%s\n", remarks->heading);
+    remarks->any = true;
+    int n = asprintf(&line, "%s%s%s", name == NULL ? "" : name, name == NULL ? "" : ": ",
+                     clean == NULL ? "" : clean);
+    fputs("  ", remarks->to);
+    ce_text_wrap(remarks->to, n < 0 ? "" : line, 2, 4, CE_TEXT_WIDTH);
+    if (n >= 0) free(line);
+    free(clean);
+    free(name);
+}
+
 static void put_comma(FILE *to, bool first)
 {
     if (!first) (void)fputc(',', to);

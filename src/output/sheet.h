@@ -40,6 +40,14 @@ void ce_sheet_none(ce_sheet *table);
  * CE_OK or CE_E_NOMEM (then nothing is printed). */
 ce_status ce_sheet_print(ce_sheet *table, FILE *to, int indent, bool colour);
 
+/* Remarks under a heading that appears with the first of them: "  subject: text", wrapped. subject may be NULL. */
+typedef struct {
+    FILE *to;
+    const char *heading;
+    bool any;
+} ce_remarks;
+void ce_remark(ce_remarks *remarks, const char *subject, const char *text);
+
 /* CSV after RFC 4180 with '\n' line ends: numbers in full, absent ones empty. Each call writes one
  * cell; first is true for the first of a row. */
 void ce_csv_text(FILE *to, bool first, const char *s);

@@ -107,3 +107,25 @@ size_t ce_text_columns(const char *s)
     }
     return total;
 }
+
+void ce_text_wrap(FILE *to, const char *s, size_t used, size_t indent, size_t width)
+{
+    bool begun = false; /* something stands on this line already */
+    while (*s != '\0') {
+        size_t n = strcspn(s, " "), columns = 0;
+        for (size_t i = 0; i < n; i++) columns += ((unsigned char)s[i] & 0xC0) != 0x80;
+        if (begun && used + 1 + columns > width) {
+            fprintf(to, "\n%*s", (int)indent, "");
+            used = indent;
+        } else if (begun) {
+            (void)fputc(' ', to);
+            used++;
+        }
+        (void)fwrite(s, 1, n, to);
+        used += columns;
+        begun = true;
+        s += n;
+        s += strspn(s, " ");
+    }
+    (void)fputc('\n', to);
+}

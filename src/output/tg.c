@@ -36,12 +36,21 @@ static void put_step(ce_sheet *table, const ce_transition *t)
     ce_sheet_cell(table, "%s", ce_fixed(text, t->step_height, ce_decimals(t->step_height_u)));
 }
 
+/* File names differ at their end; what comes before the last folders is noise. */
+static const char *short_name(const char *path)
+{
+    const char *p = path + strlen(path);
+    int slashes = 0;
+    while (p > path && !(p[-1] == '/' && ++slashes == 1)) p--;
+    return p;
+}
+
 static void put_run_row(ce_sheet *table, const ce_evaluation *e, const ce_transition *t,
                         ce_construction take)
 {
     char text[CE_NUMBER_ROOM];
     const ce_reading *r = &t->tg[take];
-    ce_sheet_text(table, e->path, 28);
+    ce_sheet_text(table, short_name(e->path), 24);
     ce_sheet_cell(table, "%s %zu", ce_segment_kind_name(e->found.segment.kind),
                   e->found.segment.nth_of_kind);
     ce_sheet_cell(table, "%s", ce_fixed(text, e->found.segment.rate_K_min, 1));
@@ -89,25 +98,17 @@ static ce_status put_many(const ce_tg_result *result, FILE *to, bool colour)
 
 static void put_flags(const ce_tg_result *result, FILE *to)
 {
-    bool any = false;
+    ce_remarks remarks = {.to = to, .heading = "flags"};
     for (size_t i = 0; i < result->n; i++)
         for (size_t k = 0; k < result->run[i].found.n; k++)
             for (size_t f = 0; f < result->run[i].found.item[k].n_flags; f++) {
                 char text[256];
                 ce_flag_text(&result->run[i].found.item[k].flags[f], text, sizeof text);
-                char *name = ce_text_shown(result->run[i].path, 40);
-                if (!any) fputs("\nflags\n", to);
-                any = true;
-                fprintf(to, "  %s%s: %s\n", name == NULL ? "?" : name,
-                        result->run[i].found.n > 1 ? (k == 0 ? ", stronger step" : ", weaker step")
-                                                   : "",
-                        text);
-                free(name);
+                ce_remark(&remarks, result->n > 1 ? short_name(result->run[i].path) : NULL, text);
             }
 }
 
-static ce_status put_one(const ce_tg_result *result, const ce_transition *t, const char *kind,
-                         FILE *to, bool colour)
+static ce_status put_one(const ce_tg_result *result, const ce_transition *t, FILE *to, bool colour)
 {
     static const ce_sheet_column column[] = {
         {"construction", "", CE_LEFT},  {"Tg", "°C", CE_POINT},           {"u", "K", CE_POINT},
@@ -140,7 +141,6 @@ static ce_status put_one(const ce_tg_result *result, const ce_transition *t, con
             ce_fixed(d, ce_degC_from_K(t->liquid.high_K), 1),
             t->windows_given ? " (windows as given)"
                              : (t->model_lines ? " (lines from the step model)" : ""));
-    (void)kind;
     return st;
 }
 
@@ -160,7 +160,7 @@ static ce_status put_single(const ce_tg_result *result, FILE *to, bool colour)
     for (size_t k = 0; k < e->found.n && st == CE_OK; k++) {
         fputc('\n', to);
         if (e->found.n > 1) fprintf(to, "%s step\n", k == 0 ? "strongest" : "further");
-        st = put_one(result, &e->found.item[k], "", to, colour);
+        st = put_one(result, &e->found.item[k], to, colour);
     }
     return st;
 }

@@ -1,6 +1,6 @@
-ce_unit_test(estimate fieller)
+ce_unit_test(estimate fieller invert)
 if(NOT EXISTS "${PROJECT_SOURCE_DIR}/src/fit/CMakeLists.txt")
-  foreach(t fieller)
+  foreach(t fieller invert)
     target_sources(test_estimate_${t} PRIVATE estimate/fit_stub.c)
   endforeach()
 endif()

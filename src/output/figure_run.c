@@ -1,0 +1,148 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+#include "output/figure.h"
+
+#include "base/quantity.h"
+#include "output/gnuplot.h"
+#include "output/number.h"
+#include "output/text.h"
+
+#include <math.h>
+#include <string.h>
+
+#define HEIGHT     1.0
+#define MOST_DRAWN 2000 /* points: more than a column has dots */
+
+static double line_at(const ce_line *line, double kelvin)
+{
+    return line->at_ref + line->slope * (kelvin - line->ref_K);
+}
+
+static void put_curve(FILE *to, const ce_run *run, const ce_segment *s, const ce_transition *t)
+{
+    const double *T = ce_run_temperature_K(run), *y = ce_run_signal(run);
+    size_t step = 1 + s->n / MOST_DRAWN;
+    fputs("# temperature °C, heat flow, heat flow minus glassy line\n$curve << EOD\n", to);
+    for (size_t i = s->first; i < s->first + s->n; i += step) {
+        ce_plot_number(to, ce_degC_from_K(T[i]));
+        ce_plot_number(to, y[i]);
+        ce_plot_number(to, y[i] - line_at(&t->glass_line, T[i]));
+        fputc('\n', to);
+    }
+    fputs("EOD\n\n", to);
+}
+
+/* A straight line needs its two ends only. */
+static void put_line(FILE *to, const char *name, const ce_line *line, double from_K, double to_K)
+{
+    fprintf(to, "$%s << EOD\n", name);
+    for (int i = 0; i < 2; i++) {
+        double T = i == 0 ? from_K : to_K;
+        ce_plot_number(to, ce_degC_from_K(T));
+        ce_plot_number(to, line_at(line, T));
+        fputc('\n', to);
+    }
+    fputs("EOD\n\n", to);
+}
+
+/* Where each construction stands on the drawing: fictive temperature has no place on the curve and gets the
+ * abscissa only. */
+static double height_of(const ce_transition *t, ce_construction c, double T)
+{
+    double g = line_at(&t->glass_line, T), l = line_at(&t->liquid_line, T);
+    switch (c) {
+    case CE_ONSET:
+        return g;
+    case CE_END:
+        return l;
+    case CE_HALF_STEP:
+        return 0.5 * (g + l);
+    case CE_MIDPOINT:
+        return 0.5 * (line_at(&t->glass_line, t->tg[CE_ONSET].value_K) +
+                      line_at(&t->liquid_line, t->tg[CE_END].value_K));
+    case CE_INFLECTION:
+        return line_at(&t->tangent, T);
+    case CE_FICTIVE:
+    case CE_CONSTRUCTIONS:
+        break;
+    }
+    return g;
+}
+
+static void put_marks(FILE *to, const ce_transition *t)
+{
+    fputs("# constructions: temperature °C, heat flow, u in K\n$marks << EOD\n", to);
+    for (ce_construction c = 0; c < CE_CONSTRUCTIONS; c++) {
+        if (!isfinite(t->tg[c].value_K)) continue;
+        ce_plot_number(to, ce_degC_from_K(t->tg[c].value_K));
+        ce_plot_number(to, height_of(t, c, t->tg[c].value_K));
+        ce_plot_number(to, t->tg[c].u_K);
+        fprintf(to, "# %s\n", ce_construction_name(c));
+    }
+    fputs("EOD\n\n", to);
+}
+
+static void put_window(FILE *to, int object, const ce_window *w)
+{
+    fprintf(to, "set object %d rectangle from ", object);
+    ce_plot_number(to, ce_degC_from_K(w->low_K));
+    fputs(", graph 0 to ", to);
+    ce_plot_number(to, ce_degC_from_K(w->high_K));
+    fputs(", graph 1 behind fillcolor rgb '#eeeeee' fillstyle solid noborder\n", to);
+}
+
+/* The list of readings stands where a heating curve leaves room: lower right. */
+static void put_readings(FILE *to, const ce_transition *t, ce_construction take)
+{
+    static const ce_construction order[] = {CE_ONSET,      CE_MIDPOINT, CE_HALF_STEP,
+                                            CE_INFLECTION, CE_END,      CE_FICTIVE};
+    double at = 0.04 + 0.055 * (CE_CONSTRUCTIONS - 1);
+    for (size_t i = 0; i < CE_CONSTRUCTIONS; i++, at -= 0.055) {
+        const ce_reading *r = &t->tg[order[i]];
+        char a[CE_NUMBER_ROOM], b[CE_NUMBER_ROOM], text[160];
+        (void)snprintf(text, sizeof text, "%s%s %s ± %s °C", order[i] == take ? "Tg: " : "",
+                       ce_construction_name(order[i]), ce_celsius(a, r->value_K, r->u_K),
+                       ce_fixed(b, r->u_K, ce_decimals(r->u_K)));
+        fputs("set label ", to);
+        ce_plot_text(to, text, 0);
+        fprintf(to, " at graph 0.97, graph %.3f right noenhanced%s\n", at,
+                order[i] == take ? " textcolor rgb '#b8400f'" : "");
+    }
+}
+
+double ce_figure_run(const ce_evaluation *e, ce_construction take, FILE *to)
+{
+    const ce_transition *t = &e->found.item[0];
+    const ce_segment *s = &e->found.segment;
+    char rate[CE_NUMBER_ROOM], title[400];
+    const char *slash = strrchr(e->path, '/');
+    (void)snprintf(title, sizeof title, "%.300s, %s %zu at %s K/min",
+                   slash == NULL ? e->path : slash + 1, ce_segment_kind_name(s->kind),
+                   s->nth_of_kind, ce_fixed(rate, fabs(s->rate_K_min), 1));
+    ce_plot_begin(to, "run", title, HEIGHT);
+    put_curve(to, e->run, s, t);
+    double lo = t->glass.low_K, hi = t->liquid.high_K;
+    double end = t->tg[CE_END].value_K, onset = t->tg[CE_ONSET].value_K,
+           reach = 0.25 * (end - onset);
+    put_line(to, "glassy", &t->glass_line, lo, hi);
+    put_line(to, "liquid", &t->liquid_line, lo, hi);
+    if (isfinite(reach)) put_line(to, "tangent", &t->tangent, onset - reach, end + reach);
+    put_marks(to, t);
+    put_window(to, 1, &t->glass);
+    put_window(to, 2, &t->liquid);
+    fputs("set title ", to);
+    ce_plot_text(to, title, 60);
+    fprintf(to, " noenhanced\nset xlabel 'temperature / °C'\nset ylabel '%s / (%s)'\n",
+            ce_run_signal_kind(e->run) == CE_SIGNAL_HEAT_CAPACITY ? "specific heat capacity"
+                                                                  : "heat flow, endothermic up",
+            ce_signal_unit(ce_run_signal_kind(e->run)));
+    put_readings(to, t, take);
+    fputs("set key top left\nset offsets 0, 0, graph 0.08, graph 0.02\n"
+          "plot $curve using 1:2 with lines linestyle 1 title 'measured', \\\n"
+          "     $glassy using 1:2 with lines linestyle 3 title 'glassy line', \\\n"
+          "     $liquid using 1:2 with lines linestyle 4 title 'liquid line', \\\n",
+          to);
+    if (isfinite(reach))
+        fputs("     $tangent using 1:2 with lines linestyle 2 title 'steepest tangent', \\\n", to);
+    fputs("     $marks using 1:2 with points linestyle 6 title 'constructions'\n", to);
+    return HEIGHT;
+}

@@ -1,0 +1,1 @@
+ce_unit_test(fit flory_fox)
