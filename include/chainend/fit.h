@@ -107,7 +107,8 @@ typedef struct {
     size_t resamples;      /* whole-sample BCa resamples as a diagnostic; default 0            */
     uint64_t seed;         /* of the resampling; default 1                                     */
     size_t max_iterations; /* default 200                                                      */
-    double tolerance;      /* relative, of the solver; default 1e-12                           */
+    double tolerance;      /* relative change at which the solver hands over to a polish to
+                               rounding; default 1e-7                                        */
 } ce_fit_options;
 CE_API ce_fit_options ce_fit_options_default(void);
 

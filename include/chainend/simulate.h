@@ -8,6 +8,7 @@
 
 #include <chainend/base.h>
 #include <chainend/run.h>
+#include <chainend/series.h>
 #include <chainend/transition.h>
 
 #include <stdbool.h>
@@ -34,8 +35,8 @@ typedef struct {
 
 /* A published parameter set. */
 typedef struct {
-    const char *name;      /* "pvac", "ps", "pmma", ...                                       */
-    const char *material;  /* "poly(vinyl acetate)"                                           */
+    const char *name;     /* "pvac", "ps", "pmma", ...                                       */
+    const char *material; /* "poly(vinyl acetate)"                                           */
     double ln_a, h_K, x, beta;
     const char *source;    /* publication                                                     */
     const char *certainty; /* how sure the numbers are                                        */
@@ -78,17 +79,17 @@ typedef struct {
 
 /* What the instrument adds. Powers in mW, of the whole sample. */
 typedef struct {
-    double mass_g;               /* sample mass, g                            (default 0.010) */
-    double interval_s;           /* time between recorded points              (default 0.6)   */
-    double noise_mW;             /* standard deviation of one point           (default 0)     */
-    double noise_time_s;         /* correlation time of the noise; 0 = white  (default 0)     */
-    double temperature_noise_K;  /* standard deviation of a recorded T        (default 0)     */
-    double temperature_offset_K; /* recorded T minus true T                   (default 0)     */
+    double mass_g;                  /* sample mass, g                            (default 0.010) */
+    double interval_s;              /* time between recorded points              (default 0.6)   */
+    double noise_mW;                /* standard deviation of one point           (default 0)     */
+    double noise_time_s;            /* correlation time of the noise; 0 = white  (default 0)     */
+    double temperature_noise_K;     /* standard deviation of a recorded T        (default 0)     */
+    double temperature_offset_K;    /* recorded T minus true T                   (default 0)     */
     double offset_mW, drift_mW_min; /* signal zero and its drift over run time  (default 0)   */
-    double transient_mW;         /* at the start of each heating, endothermic; minus that at the
+    double transient_mW;            /* at the start of each heating, endothermic; minus that at the
                                     start of each cooling; decays exponentially (default 0)  */
-    double transient_s;          /* its time constant                         (default 15)    */
-    double lag_s;                /* thermal lag, first-order, same both ways  (default 0)     */
+    double transient_s;             /* its time constant                         (default 15)    */
+    double lag_s;                   /* thermal lag, first-order, same both ways  (default 0)     */
 } ce_instrument;
 
 typedef enum {
@@ -118,14 +119,14 @@ CE_API ce_simulation_config ce_simulation_config_default(void);
  * of ce_construction. Of a blend, each glass against its own part of the curve. */
 typedef struct {
     ce_segment_kind kind;
-    size_t segment, nth_of_kind; /* 1-based, of the recorded segments                        */
-    size_t glass;                /* 0 or 1                                                   */
-    double rate_K_min;           /* negative on cooling                                      */
+    size_t segment, nth_of_kind;   /* 1-based, of the recorded segments                        */
+    size_t glass;                  /* 0 or 1                                                   */
+    double rate_K_min;             /* negative on cooling                                      */
     double tg_K[CE_CONSTRUCTIONS]; /* fictive: the model's own; NaN = not on this ramp       */
-    double fictive_area_K;       /* from equal areas under the simulated curve, lag removed  */
-    double half_step_sample_K;   /* without lag and offset                                   */
-    double step_J_gK;            /* at the half-step, of the whole sample's mass             */
-    double peak, peak_K;         /* largest normalised heat capacity and where               */
+    double fictive_area_K;         /* from equal areas under the simulated curve, lag removed  */
+    double half_step_sample_K;     /* without lag and offset                                   */
+    double step_J_gK;              /* at the half-step, of the whole sample's mass             */
+    double peak, peak_K;           /* largest normalised heat capacity and where               */
 } ce_ramp_truth;
 
 typedef struct ce_simulation ce_simulation; /* opaque, immutable                             */
@@ -194,9 +195,6 @@ CE_API ce_status ce_simulation_truth_json(const ce_simulation *simulation, char 
 /* Tg, K, at a number-average molar mass, g/mol. */
 typedef double (*ce_tg_of_mn)(double mn_g_mol, const void *context);
 
-typedef enum { CE_ROLE_STANDARD, CE_ROLE_UNKNOWN, CE_ROLE_CONTROL } ce_role;
-/* "standard", "unknown", "control". */
-CE_API const char *ce_role_name(ce_role role);
 typedef struct {
     const char *name; /* borrowed during the call                                            */
     ce_role role;
@@ -220,7 +218,7 @@ typedef struct {
      * of the sample's Tg from programme_tg_K, rounded to 5 K (0 = not shifted). */
     ce_simulation_config run;
     double programme_tg_K;
-    uint64_t seed; /* default 1                                                                  */
+    uint64_t seed;  /* default 1                                                                  */
     size_t threads; /* default 1; the result does not depend on it                               */
 } ce_series_plan;
 CE_API ce_series_plan ce_series_plan_default(void);
@@ -275,8 +273,7 @@ CE_API ce_status ce_simulated_series_table(const ce_series_plan *plan,
                                            ce_error *err);
 CE_API ce_status ce_simulated_series_json(const ce_series_plan *plan,
                                           const ce_simulated_series *series,
-                                          const ce_series_words *words, char **json,
-                                          ce_error *err);
+                                          const ce_series_words *words, char **json, ce_error *err);
 
 #ifdef __cplusplus
 }

@@ -10,7 +10,8 @@
     X(series, "evaluate a series, show the pairs of Mn and Tg")                                    \
     X(fit, "fit the Tg-Mn relation, with intervals and diagnostics")                               \
     X(estimate, "Mn from Tg, Tg from Mn, with an interval")                                        \
-    X(figure, "a gnuplot script with its data inside, and the picture")
+    X(figure, "a gnuplot script with its data inside, and the picture")                            \
+    X(simulate, "synthetic runs and series with known truth")
 
 #define X(name, summary) int cmd_##name(int argc, char **argv);
 CLI_COMMANDS(X)

@@ -15,7 +15,7 @@ double ce_fieller_g(const ce_straight *line, double t)
 
 static ce_set everything(void)
 {
-    return (ce_set){.n = 1, .low = {-INFINITY}, .high = {INFINITY}};
+    return (ce_set){.n = 1, .low = {-(double)INFINITY}, .high = {(double)INFINITY}};
 }
 
 /* A = 0: the condition 2 B x + C <= 0 is linear. */
@@ -48,7 +48,7 @@ ce_set ce_fieller(const ce_straight *line, double y, double v, double t)
     double x1 = s / A, x2 = s == 0.0 ? 0.0 : C / s;
     double low = fmin(x1, x2), high = fmax(x1, x2);
     if (A > 0.0) return (ce_set){.n = 1, .low = {low}, .high = {high}};
-    return (ce_set){.n = 2, .low = {-INFINITY, high}, .high = {low, INFINITY}};
+    return (ce_set){.n = 2, .low = {-(double)INFINITY, high}, .high = {low, (double)INFINITY}};
 }
 
 ce_set ce_set_not_negative(const ce_set *set)
@@ -94,7 +94,7 @@ static void cross(tracer *tr, double z)
 {
     if (!tr->inside) {
         if (tr->set.n < 2) tr->set.low[tr->set.n++] = z;
-        tr->set.high[tr->set.n - 1] = INFINITY;
+        tr->set.high[tr->set.n - 1] = (double)INFINITY;
     } else {
         tr->set.high[tr->set.n - 1] = z;
     }

@@ -27,7 +27,7 @@ double ce_student(double level, double nu)
 
 bool ce_fit_span(const ce_fit *fit, double *low, double *high)
 {
-    *low = INFINITY;
+    *low = (double)INFINITY;
     *high = 0.0;
     for (size_t j = 0; j < fit->n_points; j++) {
         *low = fmin(*low, fit->point[j].molar.mn_g_mol);

@@ -20,7 +20,8 @@ ce_status ce_ceiling(const ce_fit *fit, size_t runs, double level, double *tg_K,
 {
     *tg_K = *mn_g_mol = (double)NAN;
     if (fit == NULL || runs == 0 || fit->p < 2) return CE_E_ARG;
-    const ce_molar plateau = {.mn_g_mol = INFINITY, .mw_g_mol = INFINITY, .chain_ends = 2.0};
+    const ce_molar plateau = {
+        .mn_g_mol = (double)INFINITY, .mw_g_mol = (double)INFINITY, .chain_ends = 2.0};
     ce_prediction top;
     if (ce_fit_predict(fit, &plateau, &top) != CE_OK) return CE_E_ARG;
 

@@ -135,17 +135,16 @@ static ce_status about_points(ce_fitting *f)
             s = SAY(f, CE_WARNING, "standard '%s' decides alone: without it there is no fit",
                     q->name);
         else if (q->flags & CE_POINT_DOMINATES)
-            s = SAY(
-                f, CE_WARNING,
-                "standard '%s' dominates: without it Tg_inf would shift by %+.2g K and %s by %+.2g "
-                "%%, more than their intervals; add a standard near it",
-                q->name, q->shift_tg_inf_K, ce_relation_parameter_name(fit->options.relation, 1),
-                100 * q->shift_k / fit->parameter[1].value);
+            s = SAY(f, CE_WARNING,
+                    "standard '%s' dominates (leverage %.2f of at most 1): without it Tg_inf would "
+                    "shift by %+.2g K and %s by %+.2g %%; add a standard near it",
+                    q->name, q->leverage, q->shift_tg_inf_K,
+                    ce_relation_parameter_name(fit->options.relation, 1),
+                    100 * q->shift_k / fit->parameter[1].value);
         if (s == CE_OK && (q->flags & CE_POINT_OUTLYING))
             s = SAY(f, CE_WARNING,
                     "standard '%s' lies %+.2f K off the curve (p = %.2g for the worst of %zu): "
-                    "check its "
-                    "Mn and its runs; it was kept",
+                    "check its Mn and its runs; it was kept",
                     q->name, q->residual_K, q->deleted_p, fit->n_points);
     }
     for (size_t i = 0; s == CE_OK && i < fit->n_runs; i++) {

@@ -39,25 +39,23 @@ static void fill_point(ce_fitting *f, size_t j)
         q->leverage += f->eiv.nls->leverage[i];
 }
 
-/* The variance of a point is known apart from the degrees of freedom of its run scatter, so its
- * residual in units of its own standard deviation is the deleted one. On runs it is the mean of a
- * sample, with the scale from the residuals as for any n. */
+/* How far a sample lies from the curve that the others give, in its own standard deviations. Where the
+ * variances are known apart from the degrees of freedom of the run scatter, that is the standardised
+ * residual itself. Where the scale comes from the scatter of the points (on runs, or with excess
+ * found), it must come from the other points alone, or one bad sample hides in the scatter it makes:
+ * leaving it out takes r^2 from the sum of squares and one degree of freedom. */
 static void judge_point(ce_fitting *f, size_t j)
 {
     ce_fit *fit = f->fit;
     ce_fit_point *q = &fit->point[j];
     double h = fmin(q->leverage, 1 - 1e-12), p = (double)fit->p;
     double e = q->residual_K * sqrt(q->weight), n = (double)fit->n_points;
-    double r = e / sqrt(1 - h), nu = fit->run_nu;
+    double r = e / sqrt(1 - h), nu = ce_fitting_nu(f);
     q->influence = r * r * h / ((1 - h) * p);
     q->deleted_t = r;
-    if (f->on_runs) {
-        /* Leaving out one sample takes r^2 from the sum of squares and one degree of freedom. */
-        double left = fit->dof - r * r;
-        q->deleted_t = r * sqrt((fit->dof - 1) / fmax(left, 0));
+    if (f->on_runs || isfinite(fit->excess_nu)) {
         nu = fit->dof - 1;
-    } else if (isfinite(nu) || fit->excess_nu < 1e9) {
-        nu = ce_fitting_nu(f);
+        q->deleted_t = nu > 0 ? r * sqrt(nu / fmax(fit->dof - r * r, 0)) : (double)NAN;
     }
     q->deleted_p = ce_bonferroni(ce_student_two_sided(q->deleted_t, nu), n);
     if (q->deleted_p < OUTLIER_ALPHA) q->flags |= CE_POINT_OUTLYING;
@@ -106,28 +104,35 @@ static void residual_sd(ce_fitting *f)
 
 /* ---- leave one out -------------------------------------------------------------------------- */
 
-/* The fit must be able to live without any one sample: a shift by more than the half-width of an
- * interval, or no fit at all, and the sample dominates. */
+/* A sample dominates when the curve has to pass through it (leverage), when leaving it out moves a
+ * parameter by twice the half-width of its interval, or when nothing can be fitted without it. */
+static bool dominates(const ce_fit *fit, const ce_fit_point *q)
+{
+    if (q->leverage > 0.9) return true;
+    for (size_t i = 0; i < 2; i++) {
+        const ce_parameter *a = &fit->parameter[i];
+        double shift = i == 0 ? q->shift_tg_inf_K : q->shift_k;
+        double room = shift < 0 ? a->value - a->low : a->high - a->value;
+        if (!(fabs(shift) <= 2 * room)) return true;
+    }
+    return false;
+}
+
 static void leave_one_out(ce_fitting *f)
 {
     ce_fit *fit = f->fit;
     double theta[CE_MAX_PARAMETERS];
+    bool enough = fit->n_points > fit->p + 1;
     memcpy(theta, f->eiv.theta, sizeof theta);
     for (size_t j = 0; j < fit->n_points; j++) {
         ce_fit_point *q = &fit->point[j];
         set_count(f, j, 0);
-        bool fitted = fit->n_points > fit->p + 1 && ce_eiv_refit(&f->eiv, NULL) == CE_OK;
+        bool fitted = enough && ce_eiv_refit(&f->eiv, NULL) == CE_OK;
         q->shift_tg_inf_K = fitted ? f->eiv.theta[0] - theta[0] : (double)NAN;
         q->shift_k = fitted ? f->eiv.theta[1] - theta[1] : (double)NAN;
         set_count(f, j, 1);
-        memcpy(f->eiv.theta, theta, sizeof theta);
-        for (size_t i = 0; i < 2; i++) {
-            const ce_parameter *a = &fit->parameter[i];
-            double shift = i == 0 ? q->shift_tg_inf_K : q->shift_k;
-            double room = shift < 0 ? a->value - a->low : a->high - a->value;
-            if (fit->n_points > fit->p + 1 && !(fabs(shift) <= room))
-                q->flags |= CE_POINT_DOMINATES;
-        }
+        memcpy(f->eiv.theta, theta, sizeof f->eiv.theta);
+        if (enough && dominates(fit, q)) q->flags |= CE_POINT_DOMINATES;
     }
 }
 
@@ -219,8 +224,8 @@ static void robust(ce_fitting *f, ce_psi psi, double *theta, double *weight, dou
 {
     ce_fit *fit = f->fit;
     memcpy(theta, f->eiv.theta, sizeof f->eiv.theta);
-    ce_status status = ce_robust_solve(f->eiv.nls, ce_eiv_residuals, &f->eiv, psi, theta, weight,
-                                       scale, &f->eiv.options);
+    ce_status status =
+        ce_robust_solve(f->eiv.nls, ce_eiv_residuals, &f->eiv, psi, theta, weight, scale);
     for (size_t j = 0; j < fit->n_points; j++) {
         double w = 0, runs = 0;
         for (size_t i = 0; i < f->n; i++)

@@ -1,7 +1,6 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
 #include "fit/eiv.h"
 
-#include <float.h>
 #include <math.h>
 #include <stdlib.h>
 #include <string.h>
@@ -34,18 +33,21 @@ static double nearest(const ce_eiv *eiv, const double *theta, const ce_eiv_point
         if (!(h > 0.1 * precision)) h = jet->slope * jet->slope / p->var_y + precision;
         double next = fmin(fmax(zeta - g / h, lo), hi), there = here;
         if (eiv->model->positive) next = fmax(next, zeta / 8);
+        /* Close to the minimum the distance is flat to rounding and cannot judge a step. */
+        bool close = fabs(next - zeta) < 1e-4 * p->sd_z;
         ce_jet trial;
         for (int k = 0; k < 30; k++, next = 0.5 * (next + zeta)) {
             eval(eiv, theta, next, p, &trial);
             there = distance(p, next, trial.value);
-            if (there <= here * (1 + 1e-14)) break;
+            if (close || there <= here) break;
         }
+        if (!(close || there <= here)) break;
         double moved = fabs(next - zeta);
-        if (!(there <= here * (1 + 1e-14))) break;
         zeta = next;
         *jet = trial;
         here = there;
-        if (!(moved > 4 * DBL_EPSILON * fabs(zeta))) break;
+        /* Newton converges quadratically: after this step only rounding is left. */
+        if (!(moved > 1e-10 * fabs(zeta))) break;
     }
     return zeta;
 }

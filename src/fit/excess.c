@@ -7,8 +7,11 @@
 
 /* Beyond this relative uncertainty a molar mass is not known, and the excess is something else. */
 #define LARGEST_R 0.5
-/* An automatic fit adds excess scatter when chance explains it less often than this. */
-#define EXCESS_ALPHA 0.05
+/* An automatic fit adds excess scatter when chance explains it less often than this: sooner in Mn,
+ * where too small a stated uncertainty costs coverage and one raised for nothing costs little
+ * (tests/bench/fit_coverage). */
+#define EXCESS_ALPHA_TG 0.05
+#define EXCESS_ALPHA_MN 0.10
 
 static double stated_r(const ce_fitting *f, size_t i)
 {
@@ -93,7 +96,8 @@ static ce_excess resolve(const ce_fitting *f)
     ce_excess asked = f->fit->options.excess;
     if (asked != CE_EXCESS_AUTO) return asked;
     if (f->mn_unstated) return CE_EXCESS_MULTIPLICATIVE;
-    if (!(f->fit->excess_p < EXCESS_ALPHA)) return CE_EXCESS_NONE;
+    if (!(f->fit->excess_p < (f->mn_uncertain ? EXCESS_ALPHA_MN : EXCESS_ALPHA_TG)))
+        return CE_EXCESS_NONE;
     return f->mn_uncertain ? CE_EXCESS_MULTIPLICATIVE : CE_EXCESS_ADDITIVE;
 }
 
@@ -124,9 +128,10 @@ static ce_status include_excess(ce_fitting *f, ce_error *err)
     }
     if (automatic && f->fit->excess_r == 0 && f->fit->excess_tau_K == 0) excess = CE_EXCESS_NONE;
     f->fit->options.excess = excess;
-    for (size_t i = 0; i < f->n; i++)
-        f->fit->point[f->sample[i]].mn_u_g_mol =
-            f->point[i].sd_z / f->point[i].z * f->fit->point[f->sample[i]].molar.mn_g_mol;
+    for (size_t i = 0; f->fit->excess_r > 0 && i < f->n; i++) {
+        ce_fit_point *q = &f->fit->point[f->sample[i]];
+        q->mn_u_g_mol = fmax(f->fit->excess_r, stated_r(f, i)) * q->molar.mn_g_mol;
+    }
     return excess == CE_EXCESS_NONE ? CE_OK : ce_eiv_refit(&f->eiv, err);
 }
 

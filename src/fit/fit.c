@@ -52,7 +52,7 @@ ce_fit_options ce_fit_options_default(void)
                             .diagnose = true,
                             .seed = 1,
                             .max_iterations = 200,
-                            .tolerance = 1e-12};
+                            .tolerance = 1e-7};
 }
 
 static ce_status check_options(const ce_fit_options *o, ce_error *err)
@@ -132,9 +132,9 @@ static ce_status common_shifts(ce_fitting *f, const double *bread)
 {
     ce_fit *fit = f->fit;
     const ce_fit_options *o = &fit->options;
-    double *change = calloc(3 * f->n, sizeof *change), *mn = change, *tg = mn + f->n,
-           *rate = tg + f->n;
+    double *change = f->n == 0 ? NULL : calloc(3 * f->n, sizeof *change);
     if (change == NULL) return CE_E_NOMEM;
+    double *mn = change, *tg = change + f->n, *rate = change + 2 * f->n;
     for (size_t i = 0; i < f->n; i++) {
         ce_jet jet;
         (void)ce_eiv_variance(&f->eiv, i, &jet);
@@ -225,11 +225,14 @@ static ce_status parameters(ce_fitting *f, ce_error *err)
     }
     /* The profiles moved the adjusted points. */
     ce_eiv_residuals(f->eiv.theta, f->eiv.nls->r, f->eiv.nls->J, &f->eiv);
-    if (fit->p > 1) {
-        const ce_parameter *k = &fit->parameter[1];
-        double t = ce_student_factor(fit->options.level, k->nu);
-        fit->slope_significance = t * t * fit->covariance[fit->p + 1] / (k->value * k->value);
-    }
+    /* How far the interval reaches towards zero. What is common to all standards scales the second
+     * parameter and cannot make it zero: left out where the interval is symmetric. */
+    const ce_parameter *k = &fit->parameter[1];
+    double reach = k->value > 0 ? k->value - k->low : k->high - k->value;
+    if (f->model->linear)
+        reach = ce_student_factor(fit->options.level, parameter_nu(fit, 1, 0)) *
+                sqrt(fit->covariance[fit->p + 1]);
+    fit->slope_significance = reach * reach / (k->value * k->value);
     return CE_OK;
 }
 

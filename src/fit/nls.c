@@ -205,7 +205,8 @@ static bool polish(ce_nls *nls, double *theta)
         for (size_t j = 0; j < p; j++) w->trial[j] = theta[j] + w->step[j];
         evaluate(nls, w->trial);
         double sum = sum_of_squares(nls);
-        if (!(sum <= nls->sum * (1 + 1e-10))) break;
+        /* Of a nearly exact fit the sum is rounding, and a tiny step must not be judged by it. */
+        if (!(sum <= nls->sum * (1 + 1e-10)) && !(size < 1e-7 && isfinite(sum))) break;
         memcpy(theta, w->trial, p * sizeof *theta);
         nls->sum = sum;
         last = size;
@@ -261,5 +262,19 @@ ce_status ce_nls_solve(ce_nls *nls, ce_nls_function fn, void *context, double *t
         return ce_fail(err, CE_E_NOFIT, "no convergence in %zu iterations", nls->iterations);
     memcpy(theta, w->theta, p * sizeof *theta);
     take_results(nls);
+    return CE_OK;
+}
+
+ce_status ce_nls_step(ce_nls *nls, ce_nls_function fn, void *context, double *theta)
+{
+    ce_nls_work *w = nls->work;
+    w->fn = fn;
+    w->context = context;
+    w->have = false;
+    evaluate(nls, theta);
+    nls->sum = sum_of_squares(nls);
+    if (!isfinite(nls->sum) || !decompose(nls)) return CE_E_NOFIT;
+    (void)gauss_newton(nls);
+    for (size_t j = 0; j < nls->p; j++) theta[j] += w->step[j];
     return CE_OK;
 }

@@ -13,13 +13,13 @@
 typedef void (*ce_nls_function)(const double *theta, double *r, double *J, void *context);
 
 typedef struct {
-    double tolerance;      /* relative change of the parameters at which GSL stops            */
+    double tolerance;      /* relative change at which GSL stops and the polish takes over       */
     size_t max_iterations; /* of GSL                                                           */
     bool kinked;           /* the minimum may lie on a kink, where no gradient vanishes         */
 } ce_nls_options;
 #define CE_NLS_DEFAULT                                                                             \
     {                                                                                              \
-        .tolerance = 1e-12, .max_iterations = 200                                                  \
+        .tolerance = 1e-7, .max_iterations = 200                                                   \
     }
 
 typedef struct ce_nls_work ce_nls_work; /* scratch, hidden: it holds GSL objects */
@@ -49,6 +49,10 @@ void ce_nls_free(ce_nls *nls);
  *   (1981) 179 (from memory), not by what the solver claims. */
 ce_status ce_nls_solve(ce_nls *nls, ce_nls_function fn, void *context, double *theta,
                        const ce_nls_options *options, ce_error *err);
+
+/* ce_nls_step - one Gauss-Newton step: theta moves to the minimum of the problem linearised there.
+ *   ret  CE_OK | CE_E_NOFIT (not finite, rank; theta unchanged). nls->r, J are those at the start. */
+ce_status ce_nls_step(ce_nls *nls, ce_nls_function fn, void *context, double *theta);
 
 /* What a profile likelihood interval needs beside the fit. */
 typedef struct {

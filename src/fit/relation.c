@@ -183,12 +183,15 @@ static size_t kinks_log_three(const double *theta, double z[CE_MAX_KINKS],
 
 /* ---- the table ------------------------------------------------------------------------------ */
 
+/* The citations are from memory; the formulas agree with those in common use. */
 static const relation_entry table[CE_RELATIONS] = {
     [CE_FLORY_FOX] =
         {.name = "flory-fox",
-         .formula = "Tg = Tg_inf - (n_e/2) K/Mn, n_e chain ends per molecule (2: linear chain)",
-         .validity = "linear chains from about 1e3 g/mol up; stars and rings by their chain ends "
-                     "only in so far as branch points do not stiffen the chain",
+         .formula = "Tg = Tg_inf - K/Mn",
+         .validity =
+             "linear chains from about 1e3 g/mol up; for n_e chain ends per molecule K/Mn is "
+             "taken n_e/2 times (stars, rings), in so far as branch points do not stiffen the "
+             "chain",
          .source = "T. G Fox and P. J. Flory, J. Appl. Phys. 21 (1950) 581",
          .abscissa_name = "n_e/(2 Mn)",
          .abscissa_unit = "mol/g",
@@ -199,19 +202,20 @@ static const relation_entry table[CE_RELATIONS] = {
                    .eval = eval_flory_fox,
                    .starts = starts_in_abscissa,
                    .abscissa = half_ends_z}},
-    [CE_UEBERREITER_KANIG] = {.name = "ueberreiter-kanig",
-                              .formula =
-                                  "Tg = Tg_inf/(1 + C/Mn), i.e. 1/Tg = 1/Tg_inf + (C/Tg_inf)/Mn",
-                              .validity = "as Flory-Fox, and stays above 0 K at low molar mass",
-                              .source = "K. Ueberreiter and G. Kanig, J. Colloid Sci. 7 (1952) 569",
-                              .abscissa_name = "1/Mn",
-                              .abscissa_unit = "mol/g",
-                              .parameter_name = {"Tg_inf", "C"},
-                              .parameter_unit = {"K", "g/mol"},
-                              .model = {.p = 2,
-                                        .eval = eval_ueberreiter_kanig,
-                                        .starts = starts_reciprocal,
-                                        .abscissa = plain_z}},
+    [CE_UEBERREITER_KANIG] =
+        {.name = "ueberreiter-kanig",
+         .formula = "Tg = Tg_inf/(1 + C/Mn)",
+         .validity =
+             "as Flory-Fox; 1/Tg is linear in 1/Mn, so Tg stays above 0 K at low molar mass",
+         .source = "K. Ueberreiter and G. Kanig, J. Colloid Sci. 7 (1952) 569",
+         .abscissa_name = "1/Mn",
+         .abscissa_unit = "mol/g",
+         .parameter_name = {"Tg_inf", "C"},
+         .parameter_unit = {"K", "g/mol"},
+         .model = {.p = 2,
+                   .eval = eval_ueberreiter_kanig,
+                   .starts = starts_reciprocal,
+                   .abscissa = plain_z}},
     [CE_ODRISCOLL_SANAYEI] =
         {.name = "odriscoll-sanayei",
          .formula = "Tg = Tg_inf - K'/Mn^(2/3)",

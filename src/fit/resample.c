@@ -71,8 +71,6 @@ ce_status ce_resample(ce_fitting *f, ce_error *err)
     for (size_t j = p; j < CE_MAX_PARAMETERS; j++) theta[j] = 0;
     if (status == CE_OK) {
         size_t done = 0, jacks = jackknife(f, theta, count, jack);
-        /* Resampling looks for the fit, not for its last digit. */
-        f->eiv.options.tolerance = fmax(f->eiv.options.tolerance, 1e-7);
         for (size_t i = 0; i < b; i++)
             if (draw(f, i, count)) done += fit_counts(f, count, theta, table, done, b);
         fit->n_resampled = done;

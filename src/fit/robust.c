@@ -12,20 +12,11 @@ enum { MAX_STEPS = 500 };
 typedef struct {
     ce_nls_function fn;
     void *context;
-    const double *weight;
+    ce_psi psi;
     size_t n, p;
-} weighted;
-
-static void weighted_function(const double *theta, double *r, double *J, void *context)
-{
-    const weighted *w = context;
-    w->fn(theta, r, J, w->context);
-    for (size_t i = 0; i < w->n; i++) {
-        double root = sqrt(w->weight[i]);
-        r[i] *= root;
-        for (size_t j = 0; j < w->p; j++) J[i * w->p + j] *= root;
-    }
-}
+    double *weight, *size; /* n; n scratch */
+    double scale, moved;
+} reweighting;
 
 static double psi_weight(ce_psi psi, double u)
 {
@@ -34,30 +25,43 @@ static double psi_weight(ce_psi psi, double u)
     return fabs(u) < 4.685 ? q * q : 0;
 }
 
-ce_status ce_robust_solve(ce_nls *nls, ce_nls_function fn, void *context, ce_psi psi, double *theta,
-                          double *weight, double *scale, const ce_nls_options *options)
+/* New scale and weights from the residuals, which are then weighted. */
+static void reweighted_function(const double *theta, double *r, double *J, void *context)
 {
-    size_t n = nls->n, p = nls->p;
-    double *r = calloc(2 * n + n * p, sizeof *r), *size = r + n, *J = size + n;
-    if (r == NULL) return CE_E_NOMEM;
-    weighted w = {.fn = fn, .context = context, .weight = weight, .n = n, .p = p};
-    ce_status status = CE_OK;
-    double moved = (double)INFINITY;
-    for (size_t i = 0; i < n; i++) weight[i] = 1;
-    for (int step = 0; step < MAX_STEPS && moved > 1e-12 && status == CE_OK; step++) {
-        fn(theta, r, J, context);
-        for (size_t i = 0; i < n; i++) size[i] = fabs(r[i]);
-        *scale = ce_median(size, n) / 0.6745;
-        if (!(*scale > 0)) break; /* more than half of the points fit exactly */
-        moved = 0;
-        for (size_t i = 0; i < n; i++) {
-            double next = psi_weight(psi, r[i] / *scale);
-            moved = fmax(moved, fabs(next - weight[i]));
-            weight[i] = next;
-        }
-        status = ce_nls_solve(nls, weighted_function, &w, theta, options, NULL);
+    reweighting *w = context;
+    w->fn(theta, r, J, w->context);
+    for (size_t i = 0; i < w->n; i++) w->size[i] = fabs(r[i]);
+    w->scale = ce_median(w->size, w->n) / 0.6745;
+    w->moved = 0;
+    for (size_t i = 0; i < w->n; i++) {
+        double next = psi_weight(w->psi, r[i] / w->scale), root = sqrt(next);
+        w->moved = fmax(w->moved, fabs(next - w->weight[i]));
+        w->weight[i] = next;
+        r[i] *= root;
+        for (size_t j = 0; j < w->p; j++) J[i * w->p + j] *= root;
     }
-    free(r);
-    if (status == CE_OK && !(*scale > 0)) return CE_E_NOFIT;
-    return status == CE_OK && moved > 1e-6 ? CE_E_NOFIT : status;
+}
+
+/* One Gauss-Newton step for each set of weights: for a relation linear in its parameters that is the
+ * weighted fit itself, for the others it comes to rest at the same place. */
+ce_status ce_robust_solve(ce_nls *nls, ce_nls_function fn, void *context, ce_psi psi, double *theta,
+                          double *weight, double *scale)
+{
+    reweighting w = {.fn = fn,
+                     .context = context,
+                     .psi = psi,
+                     .n = nls->n,
+                     .p = nls->p,
+                     .weight = weight,
+                     .moved = (double)INFINITY};
+    w.size = calloc(nls->n, sizeof *w.size);
+    if (w.size == NULL) return CE_E_NOMEM;
+    ce_status status = CE_OK;
+    for (size_t i = 0; i < nls->n; i++) weight[i] = 1;
+    for (int step = 0; step < MAX_STEPS && w.moved > 1e-12 && status == CE_OK; step++)
+        status = ce_nls_step(nls, reweighted_function, &w, theta);
+    *scale = w.scale;
+    free(w.size);
+    /* A scale of 0: more than half of the points fit exactly. */
+    return status == CE_OK && (w.moved > 1e-6 || !(w.scale > 0)) ? CE_E_NOFIT : status;
 }

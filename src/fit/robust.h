@@ -14,8 +14,8 @@ typedef enum { CE_HUBER, CE_BISQUARE } ce_psi;
  *   (2002), ch. 6, both from memory).
  *   in,out  theta   p, the least-squares solution; the robust one
  *   out     weight  n, 0..1; scale in units of the residuals
- *   ret     CE_OK | CE_E_NOFIT | CE_E_NOMEM. nls is used for the fits. */
+ *   ret     CE_OK | CE_E_NOFIT | CE_E_NOMEM. nls is used for the steps. */
 ce_status ce_robust_solve(ce_nls *nls, ce_nls_function fn, void *context, ce_psi psi, double *theta,
-                          double *weight, double *scale, const ce_nls_options *options);
+                          double *weight, double *scale);
 
 #endif

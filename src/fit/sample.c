@@ -68,7 +68,7 @@ static int rising(const void *l, const void *r)
 /* Molar masses the relation can tell apart. 0 when out of memory. */
 static size_t count_distinct(const ce_fitting *f)
 {
-    double *x = calloc(f->n_standards, sizeof *x);
+    double *x = f->n_standards == 0 ? NULL : calloc(f->n_standards, sizeof *x);
     if (x == NULL) return 0;
     for (size_t i = 0; i < f->n_standards; i++)
         x[i] = ce_relation_abscissa(f->fit->options.relation, &f->standard[i].molar);
@@ -90,6 +90,15 @@ static ce_status check_count(const ce_fitting *f, ce_error *err)
                        "%zu standard%s, but %s has %zu parameters and needs at least %zu with "
                        "different molar masses; add standards",
                        f->n_standards, f->n_standards == 1 ? "" : "s", name, f->model->p, need);
+    bool rings = true;
+    for (size_t j = 0; j < f->n_standards; j++)
+        rings &= ce_relation_abscissa(f->fit->options.relation, &f->standard[j].molar) == 0;
+    if (rings && distinct == 1)
+        return ce_fail(
+            err, CE_E_NOFIT,
+            "no standard has a chain end, so %s cannot depend on the molar mass; add linear "
+            "standards",
+            name);
     if (distinct == 1)
         return ce_fail(
             err, CE_E_NOFIT,

@@ -51,34 +51,32 @@ static int by_z_falling(const void *l, const void *r)
 }
 
 /* Sorted by Mn, samples of one Mn merged; the weights use the slope of a straight line in z. More
- * than SEGMENT_SAMPLES samples are thinned: these are start values only. */
+ * than SEGMENT_SAMPLES points are thinned: these are start values only. */
 static bool sort_points(const ce_model *self, size_t n, const ce_eiv_point *point, sorted_points *s)
 {
-    ce_eiv_point *copy = calloc(n, sizeof *copy);
+    ce_eiv_point copy[SEGMENT_SAMPLES];
+    size_t taken = 0, stride = 1 + (n - 1) / SEGMENT_SAMPLES;
     double a, b;
     *s = (sorted_points){0};
-    if (copy == NULL) return false;
-    for (size_t i = 0; i < n; i++) copy[i] = point[i];
-    qsort(copy, n, sizeof *copy, by_z_falling);
+    for (size_t i = 0; i < n; i += stride)
+        if (point[i].count > 0) copy[taken++] = point[i];
+    qsort(copy, taken, sizeof *copy, by_z_falling);
     const ce_model *line = ce_relation_model(CE_UEBERREITER_KANIG); /* its abscissa is z */
-    bool ok = ce_start_line(line, n, point, NULL, &a, &b);
-    size_t stride = 1 + n / SEGMENT_SAMPLES;
-    for (size_t i = 0; ok && i < n; i += stride) {
+    if (!ce_start_line(line, n, point, NULL, &a, &b)) return false;
+    for (size_t i = 0; i < taken; i++) {
         const ce_eiv_point *p = &copy[i];
-        if (p->count == 0) continue;
         double x = self->abscissa(p->z, &p->chain);
         double w = p->count / (p->var_y + b * b * p->sd_z * p->sd_z);
         size_t k = s->n;
         if (k > 0 && x - s->x[k - 1] < 1e-9) {
             s->y[k - 1] = (s->w[k - 1] * s->y[k - 1] + w * p->y) / (s->w[k - 1] + w);
             s->w[k - 1] += w;
-        } else if (k < SEGMENT_SAMPLES) {
+        } else {
             s->x[k] = x, s->y[k] = p->y, s->w[k] = w;
             s->n++;
         }
     }
-    free(copy);
-    return ok;
+    return true;
 }
 
 /* Weighted linear least squares on 1, min(x - x2, 0) and, with three regimes, min(x - x1, 0) by the
@@ -159,7 +157,7 @@ size_t ce_starts_log_plateau(const ce_model *self, size_t n, const ce_eiv_point 
     for (size_t gap = 1; gap + 1 < s.n; gap++) {
         candidate here = {.sum = (double)INFINITY};
         for (int i = 0; i < STEPS; i++) {
-            double c[3], at = grid(s.x[gap], s.x[gap + 1], i), sum = hinge_fit(&s, 1, &at, c);
+            double c[3] = {0}, at = grid(s.x[gap], s.x[gap + 1], i), sum = hinge_fit(&s, 1, &at, c);
             if (sum < here.sum) here = (candidate){sum, {c[0], c[1], pow(10, at)}};
         }
         if (isfinite(here.sum)) keep(best, &found, &here);

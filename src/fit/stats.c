@@ -92,7 +92,7 @@ typedef struct {
 /* k groups, or NULL. Freed by the caller. */
 static group_sum *group_sums(size_t n, const double *value, const size_t *group, size_t k)
 {
-    group_sum *g = calloc(k, sizeof *g);
+    group_sum *g = k == 0 ? NULL : calloc(k, sizeof *g);
     if (g == NULL) return NULL;
     for (size_t i = 0; i < n; i++) g[group[i]].n++, g[group[i]].mean += value[i];
     for (size_t j = 0; j < k; j++) g[j].mean /= g[j].n;
@@ -128,9 +128,10 @@ ce_test ce_bartlett(size_t n, const double *value, const size_t *group, size_t k
 ce_test ce_levene(size_t n, const double *value, const size_t *group, size_t k)
 {
     ce_test t = {.statistic = none, .p = none};
-    double *d = calloc(2 * n, sizeof *d), *members = d + n;
+    double *d = n == 0 ? NULL : calloc(2 * n, sizeof *d), *members;
     group_sum *g = NULL;
     if (d == NULL) return t;
+    members = d + n;
     for (size_t j = 0; j < k; j++) {
         size_t m = 0;
         for (size_t i = 0; i < n; i++)

@@ -85,7 +85,9 @@ static void put_mn_row(ce_sheet *sheet, const ce_answer *answer)
     ce_sheet_cell(sheet, "%zu", answer->readings);
     ce_sheet_cell(sheet, "%s", ce_celsius(text, e->tg_K, e->u_K));
     ce_sheet_cell(sheet, "%s", ce_fixed(text, e->u_K, ce_decimals(e->u_K)));
-    ce_sheet_cell(sheet, "%s", ce_kg_mol(text, e->mn_g_mol));
+    /* a point estimate that only a bound stands behind is not for quoting */
+    ce_sheet_cell(sheet, "%s",
+                  ce_kg_mol(text, e->bound == CE_TWO_SIDED ? e->mn_g_mol : (double)NAN));
     ce_sheet_cell(sheet, "%s", ce_kg_mol(text, e->low_g_mol));
     ce_sheet_cell(sheet, "%s", high_text(text, e));
     ce_sheet_cell(sheet, "%s", ce_bound_name(e->bound));
@@ -116,27 +118,16 @@ static ce_status put_mn_table(const ce_estimate_result *result, FILE *to, bool c
 
 static void put_remarks(const ce_estimate_result *result, FILE *to)
 {
-    bool any = false;
+    ce_remarks remarks = {.to = to, .heading = "remarks"};
     for (size_t i = 0; i < result->n; i++) {
         const ce_answer *a = &result->answer[i];
         if (a->status != CE_OK || a->tg_of_mn) continue;
-        char *name = ce_text_shown(a->name, 24);
-        for (unsigned bit = 1u; bit <= CE_EST_CURVE_EXTENDED; bit <<= 1) {
-            if ((a->mn.flags & bit) == 0) continue;
-            fprintf(to, "%s  %s: %s\n", any ? "" : "\nremarks\n", name == NULL ? "?" : name,
-                    ce_estimate_flag_text(bit));
-            any = true;
-        }
+        for (unsigned bit = 1u; bit <= CE_EST_CURVE_EXTENDED; bit <<= 1)
+            if ((a->mn.flags & bit) != 0) ce_remark(&remarks, a->name, ce_estimate_flag_text(bit));
         if (a->despite)
-            fprintf(to,
-                    "%s  %s: measured in another way than the calibration, allowed by --despite\n",
-                    any ? "" : "\nremarks\n", name == NULL ? "?" : name);
-        any = any || a->despite;
-        if (a->hint[0] != '\0')
-            fprintf(to, "%s  %s: %s\n", any ? "" : "\nremarks\n", name == NULL ? "?" : name,
-                    a->hint);
-        any = any || a->hint[0] != '\0';
-        free(name);
+            ce_remark(&remarks, a->name,
+                      "measured in another way than the calibration, allowed by --despite");
+        if (a->hint[0] != '\0') ce_remark(&remarks, a->name, a->hint);
     }
 }
 
@@ -162,9 +153,9 @@ ce_status ce_write_estimate_text(const ce_estimate_result *result, FILE *to, boo
     if (st != CE_OK) return st;
     put_remarks(result, to);
     char *polymer =
-        ce_text_shown(result->polymer == NULL ? "polymer not stated" : result->polymer, 60);
-    fprintf(to, "\ncalibration: %s, %s; Tg is ", polymer == NULL ? "" : polymer,
-            ce_relation_formula(result->fit->options.relation));
+        ce_text_shown(result->polymer == NULL ? "polymer not stated" : result->polymer, 80);
+    fprintf(to, "\ncalibration  %s\n             %s\n             Tg is ",
+            polymer == NULL ? "" : polymer, ce_relation_formula(result->fit->options.relation));
     free(polymer);
     ce_write_definition(result->construction, result->rate_K_min, result->history, to);
     fputc('\n', to);

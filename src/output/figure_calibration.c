@@ -133,7 +133,7 @@ double ce_figure_calibration(const ce_estimate_result *r, FILE *to)
     char text[120];
     (void)snprintf(text, sizeof text, "Tg (%s) / °C", ce_construction_name(r->construction));
     ce_plot_text(to, text, 0);
-    fputs(" noenhanced\nset multiplot layout 2,1\nset key bottom right\nset logscale x\n", to);
+    fputs(" noenhanced\nset multiplot layout 2,1\nunset key\nset logscale x\n", to);
     fprintf(to, "set xlabel 'Mn / (kg/mol)'\nset xrange [%.6g:%.6g]\n", x.low_mn / 1000.0,
             x.high_mn / 1000.0);
     if (isfinite(r->ceiling_mn_g_mol)) {
@@ -146,9 +146,9 @@ double ce_figure_calibration(const ce_estimate_result *r, FILE *to)
                 r->ceiling_mn_g_mol / 1000.0);
     }
     put_panel(to, &(panel){"band_log", 1, 1, 2, 2, 3, 4}, unknowns);
-    fputs(
-        "unset arrow 1\nunset label 1\nunset key\nunset logscale x\nset xlabel '1/Mn / (mol/kg)'\n",
-        to);
+    fputs("unset arrow 1\nunset label 1\nset key inside top right noreverse Right\nunset logscale "
+          "x\nset xlabel '1/Mn / (mol/kg)'\n",
+          to);
     fprintf(to, "set xrange [%.6g:%.6g]\n", -0.02 * 1000.0 / x.low_mn, 1000.0 / x.low_mn);
     put_panel(to, &(panel){"band_reciprocal", 2, 3, 4, 5, 6, 7}, unknowns);
     fputs("unset multiplot\n", to);

@@ -81,6 +81,28 @@ static void put_marks(FILE *to, const ce_transition *t)
     fputs("EOD\n\n", to);
 }
 
+/* The start-up would squeeze the step into a corner: the axis fits the curve from the glassy window on. */
+static void put_ranges(FILE *to, const ce_run *run, const ce_segment *s, const ce_transition *t)
+{
+    const double *T = ce_run_temperature_K(run), *y = ce_run_signal(run);
+    double low = (double)INFINITY, high = -(double)INFINITY;
+    for (size_t i = s->first; i < s->first + s->n; i++) {
+        if (T[i] < t->glass.low_K || T[i] > t->liquid.high_K) continue;
+        low = fmin(low, y[i]);
+        high = fmax(high, y[i]);
+    }
+    double pad = high - low;
+    fputs("set xrange [", to);
+    ce_plot_number(to, ce_degC_from_K(s->low_K));
+    fputs(":", to);
+    ce_plot_number(to, ce_degC_from_K(s->high_K));
+    fputs("]\nset yrange [", to);
+    ce_plot_number(to, low - 0.75 * pad);
+    fputs(":", to);
+    ce_plot_number(to, high + 0.25 * pad);
+    fputs("]\n", to);
+}
+
 static void put_window(FILE *to, int object, const ce_window *w)
 {
     fprintf(to, "set object %d rectangle from ", object);
@@ -135,8 +157,9 @@ double ce_figure_run(const ce_evaluation *e, ce_construction take, FILE *to)
             ce_run_signal_kind(e->run) == CE_SIGNAL_HEAT_CAPACITY ? "specific heat capacity"
                                                                   : "heat flow, endothermic up",
             ce_signal_unit(ce_run_signal_kind(e->run)));
+    put_ranges(to, e->run, s, t);
     put_readings(to, t, take);
-    fputs("set key top left\nset offsets 0, 0, graph 0.08, graph 0.02\n"
+    fputs("set key maxcols 3\n"
           "plot $curve using 1:2 with lines linestyle 1 title 'measured', \\\n"
           "     $glassy using 1:2 with lines linestyle 3 title 'glassy line', \\\n"
           "     $liquid using 1:2 with lines linestyle 4 title 'liquid line', \\\n",

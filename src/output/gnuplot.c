@@ -15,8 +15,11 @@ void ce_plot_text(FILE *to, const char *s, size_t columns)
     char *clean = ce_text_shown(s, columns);
     (void)fputc('\'', to);
     for (const char *p = clean == NULL ? "" : clean; *p != '\0'; p++) {
-        if (*p == '\'') (void)fputc('\'', to);
-        (void)fputc(*p, to);
+        /* gnuplot 5.4 stumbles over doubled quotes at the ends of a string: the typographic one is drawn alike */
+        if (*p == '\'')
+            (void)fputs("\xE2\x80\x99", to);
+        else
+            (void)fputc(*p, to);
     }
     (void)fputc('\'', to);
     free(clean);
@@ -44,7 +47,7 @@ void ce_plot_begin(FILE *to, const char *kind, const char *title, double height)
           "set termoption noenhanced\n"
           "set border 31 linewidth 0.6 linecolor rgb '#404040'\n"
           "set tics nomirror scale 0.6 textcolor rgb '#202020'\n"
-          "set key samplen 2 spacing 1.1 width -1 textcolor rgb '#202020' noenhanced\n"
+          "set key below samplen 2 spacing 1.1 textcolor rgb '#202020' noenhanced Left reverse\n"
           "set style line 1 linecolor rgb '#000000' linewidth 1.0 pointtype 7 pointsize 0.45\n"
           "set style line 2 linecolor rgb '#1f4e8c' linewidth 1.4\n"
           "set style line 3 linecolor rgb '#8c5a1f' linewidth 1.0 dashtype (8,4)\n"

@@ -8,7 +8,7 @@
 #include <stddef.h>
 #include <stdio.h>
 
-/* A string literal that gnuplot takes as plain text whatever stands in it: single-quoted, quotes doubled,
+/* A string literal that gnuplot takes as plain text whatever stands in it: single-quoted, quotes made typographic,
  * control characters and direction marks replaced, cut to columns (0 = any length). To be used with the
  * keyword noenhanced. */
 void ce_plot_text(FILE *to, const char *s, size_t columns);

@@ -59,7 +59,10 @@ static void put_run_row(ce_sheet *table, const ce_evaluation *e, const ce_transi
     for (size_t c = 0; c < CE_CONSTRUCTIONS; c++)
         if (order[c] != take) put_value(table, &t->tg[order[c]]);
     put_step(table, t);
-    ce_sheet_cell(table, t->n_flags > 0 ? "%zu" : "", t->n_flags);
+    if (t->n_flags > 0)
+        ce_sheet_cell(table, "%zu", t->n_flags);
+    else
+        ce_sheet_text(table, "", 0);
 }
 
 static const char *step_unit(const ce_tg_result *result)

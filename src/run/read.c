@@ -97,6 +97,24 @@ static void find_roles(reader *r)
     }
 }
 
+/* A column the caller names: by its header name, or by its number from 1. "none" leaves the time out. */
+static ce_status take_column(reader *r, size_t k, const char *wanted, const char *option)
+{
+    if (wanted == NULL) return CE_OK;
+    r->at[k] = SIZE_MAX;
+    if (k == TIME && strcmp(wanted, "none") == 0) return CE_OK;
+    for (size_t i = 0; i < r->n_columns && r->at[k] == SIZE_MAX; i++)
+        if (ce_same_name(r->column[i].name, wanted)) r->at[k] = i;
+    double x;
+    if (r->at[k] == SIZE_MAX && ce_parse_number(wanted, strlen(wanted), '.', &x) && x >= 1.0 &&
+        x <= (double)r->n_columns && x == floor(x))
+        r->at[k] = (size_t)x - 1;
+    if (r->at[k] != SIZE_MAX) return CE_OK;
+    return ce_fail_at(r->err, CE_E_ARG, r->run->name, r->header_line, 0,
+                      "--%s-column: there is no column '%.60s' (the header names %zu)", option,
+                      wanted, r->n_columns);
+}
+
 static ce_status check_role(reader *r, size_t k, const char *what, const char *option, bool needed)
 {
     if (r->at[k] == SIZE_MAX) {
@@ -121,7 +139,12 @@ static ce_status check_role(reader *r, size_t k, const char *what, const char *o
                            k == TIME          ? "time column"
                            : k == TEMPERATURE ? "temperature column"
                                               : "signal column",
-                           CE_ORIGIN_STATED, r->header_line,
+                           (k == TIME          ? r->o->time_column
+                            : k == TEMPERATURE ? r->o->temperature_column
+                                               : r->o->signal_column) != NULL
+                               ? CE_ORIGIN_OPTION
+                               : CE_ORIGIN_STATED,
+                           r->header_line,
                            k == TIME          ? "--time-column"
                            : k == TEMPERATURE ? "--temperature-column"
                                               : "--signal-column",
@@ -207,7 +230,10 @@ static ce_status settle_columns(reader *r)
                     "no header line names the columns: say them with --temperature-column, "
                     "--signal-column and --time-column");
     find_roles(r);
-    ce_status st = check_role(r, TEMPERATURE, "temperature", "temperature", true);
+    ce_status st = take_column(r, TIME, r->o->time_column, "time");
+    if (st == CE_OK) st = take_column(r, TEMPERATURE, r->o->temperature_column, "temperature");
+    if (st == CE_OK) st = take_column(r, SIGNAL, r->o->signal_column, "signal");
+    if (st == CE_OK) st = check_role(r, TEMPERATURE, "temperature", "temperature", true);
     if (st == CE_OK) st = check_role(r, SIGNAL, "heat flow", "signal", true);
     if (st == CE_OK) st = check_role(r, TIME, "time", "time", isnan(r->o->rate_K_min));
     return st;

@@ -27,8 +27,10 @@ static double time_at(const ce_run *run, size_t i)
     return run->time_s != NULL ? run->time_s[i] : (double)i;
 }
 
-/* Robust rate and spread over [first, first + n): median and MAD of chord slopes, per unit of time. */
-static ce_status rate_of(const ce_run *run, size_t first, size_t n, double *rate, double *spread)
+/* Robust rate and spread over [first, first + n): a quantile (0.5 = median) and the MAD of chord slopes, per unit of
+ * time. */
+static ce_status rate_of(const ce_run *run, size_t first, size_t n, double quantile, double *rate,
+                         double *spread)
 {
     size_t chord = n / 20 > 0 ? n / 20 : 1, m = 0;
     double *slope = malloc(n * sizeof *slope);
@@ -37,7 +39,7 @@ static ce_status rate_of(const ce_run *run, size_t first, size_t n, double *rate
         double dt = time_at(run, i + chord) - time_at(run, i);
         if (dt > 0.0) slope[m++] = (run->temperature_K[i + chord] - run->temperature_K[i]) / dt;
     }
-    *rate = ce_median(slope, m);
+    *rate = ce_quantile(slope, m, quantile);
     *spread = CE_MAD_TO_SD * ce_mad(slope, m);
     free(slope);
     return CE_OK;
@@ -60,7 +62,7 @@ static ce_status add(finder *f, size_t first, size_t n, ce_segment_kind kind)
         .kind = kind, .index = run->n_segments + 1, .nth_of_kind = 1, .first = first, .n = n};
     for (size_t i = 0; i < run->n_segments; i++) s.nth_of_kind += run->segment[i].kind == kind;
     double rate, spread;
-    if (rate_of(run, first, n, &rate, &spread) != CE_OK)
+    if (rate_of(run, first, n, 0.5, &rate, &spread) != CE_OK)
         return ce_fail(f->err, CE_E_NOMEM, "out of memory");
     s.rate_K_min = run->time_s != NULL ? 60.0 * rate : (double)NAN;
     s.rate_sd_K_min = run->time_s != NULL ? 60.0 * spread : (double)NAN;
@@ -77,7 +79,7 @@ static ce_status add(finder *f, size_t first, size_t n, ce_segment_kind kind)
 static size_t trim(const ce_run *run, size_t a, size_t b, double rate, bool from_end)
 {
     size_t n = b - a, chord = n / 50 > 0 ? n / 50 : 1;
-    for (size_t k = 0; k + chord < n / 2; k++) {
+    for (size_t k = 0; k + chord < n; k++) {
         size_t i = from_end ? b - 1 - k - chord : a + k, j = i + chord;
         double dt = time_at(run, j) - time_at(run, i);
         if (dt > 0.0 && (run->temperature_K[j] - run->temperature_K[i]) / dt / rate > LAGGING)
@@ -94,7 +96,8 @@ static ce_status add_leg(finder *f, size_t a, size_t b)
     double change = run->temperature_K[b - 1] - run->temperature_K[a];
     if (fabs(change) < LEAST_RAMP_K) return add(f, a, b - a, CE_ISOTHERMAL);
     double rate, spread;
-    if (rate_of(run, a, b - a, &rate, &spread) != CE_OK)
+    /* holds at the ends may outlast the ramp: its rate is among the fastest */
+    if (rate_of(run, a, b - a, change > 0.0 ? 0.9 : 0.1, &rate, &spread) != CE_OK)
         return ce_fail(f->err, CE_E_NOMEM, "out of memory");
     size_t head = 0, tail = 0;
     if (rate * change > 0.0) { /* else mostly a hold: what follows cannot tell */

@@ -52,6 +52,14 @@ static ce_transition_options how_of(const ce_series *series, const ce_series_row
     return o;
 }
 
+static bool has_flag(const ce_transition *t, ce_flag_code code)
+{
+    for (size_t f = 0; f < t->n_flags; f++)
+        if (t->flags[f].code == code) return true;
+    return false;
+}
+
+/* Heatings in the file of a run. */
 static size_t heatings_in(const ce_run *run)
 {
     size_t n, heatings = 0;
@@ -80,8 +88,8 @@ static ce_status check_agreement(ce_series *series, ce_series_row *row, const ce
     if (fabs(rate / series->rate_K_min - 1.0) > RATE_TOLERANCE)
         return leave_out(series, row, messages, "measured at %.3g K/min, the series at %.3g K/min",
                          rate, series->rate_K_min);
-    if (series->history == CE_HISTORY_ERASED && s->kind == CE_HEATING && s->nth_of_kind == 1 &&
-        heatings_in(e->run) > 1)
+    if (series->history == CE_HISTORY_ERASED && heatings_in(e->run) > 1 &&
+        has_flag(&e->found.item[0], CE_FLAG_FIRST_HEATING))
         return leave_out(series, row, messages,
                          "first heating evaluated, but the history of the series is erased");
     if (series->history == CE_HISTORY_AS_RECEIVED && s->kind == CE_HEATING && s->nth_of_kind > 1)

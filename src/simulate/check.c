@@ -71,8 +71,10 @@ static ce_status check_programme(const ce_programme *p, ce_error *err)
                              {"--ramp", s->to_K, 0.0, 3000.0, false, true, " K"}};
         st = check_rules(ramp, COUNT(ramp), err);
         if (st == CE_OK && !(fabs(s->to_K - at) >= 1.0e-3))
-            st = ce_fail(err, CE_E_DOMAIN, "--ramp: step %zu of the programme goes from %.9g K to "
-                                           "%.9g K; use a hold to stay", i + 1, at, s->to_K);
+            st = ce_fail(err, CE_E_DOMAIN,
+                         "--ramp: step %zu of the programme goes from %.9g K to "
+                         "%.9g K; use a hold to stay",
+                         i + 1, at, s->to_K);
         at = s->to_K;
     }
     if (st == CE_OK && recorded == 0)
@@ -127,8 +129,10 @@ static ce_status check_lines(const ce_glass *g, const ce_programme *p, ce_error 
     for (int i = 0; i < 2; i++) {
         double t = i == 0 ? low : high;
         if (!(g->step + g->slope_step * (t - g->ref_K) > 0.0))
-            return ce_fail(err, CE_E_DOMAIN, "--slope-step: the heat capacities of glass and liquid "
-                                             "cross before %.6g K", t);
+            return ce_fail(err, CE_E_DOMAIN,
+                           "--slope-step: the heat capacities of glass and liquid "
+                           "cross before %.6g K",
+                           t);
     }
     return CE_OK;
 }
@@ -145,8 +149,8 @@ ce_status ce_simulation_check(const ce_simulation_config *config, ce_error *err)
         shares += config->glass[g].share;
     }
     if (st == CE_OK && !(shares <= 1.0 + 1.0e-9))
-        st = ce_fail(err, CE_E_DOMAIN, "--share: the shares of the glasses add to %.9g, more than 1",
-                     shares);
+        st = ce_fail(err, CE_E_DOMAIN,
+                     "--share: the shares of the glasses add to %.9g, more than 1", shares);
     if (st == CE_OK) st = check_programme(&config->programme, err);
     if (st == CE_OK) st = check_instrument(&config->instrument, err);
     if (st == CE_OK) st = check_peaks(config, err);

@@ -5,8 +5,9 @@
 
 /* Hodge's tables and the papers behind them, remembered, not re-read. What speaks for the pairs of
  * ln A and h: each gives tau = 100 s at the known glass transition of its material. */
-#define FROM_MEMORY "from memory; ln A and h agree with the known Tg (tau = 100 s there), x and beta unverified"
-#define HODGE       "after Hodge, J. Non-Cryst. Solids 169 (1994) 211 and papers cited there"
+#define FROM_MEMORY                                                                                \
+    "from memory; ln A and h agree with the known Tg (tau = 100 s there), x and beta unverified"
+#define HODGE "after Hodge, J. Non-Cryst. Solids 169 (1994) 211 and papers cited there"
 
 /* clang-format off */
 static const ce_glass_set sets[] = {

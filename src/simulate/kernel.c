@@ -25,8 +25,8 @@ static double density_integral(double beta, double s)
             ln_a = log(1.0 - beta) + p * log(beta);
         } else {
             double th = M_PI * (double)i / (double)n;
-            ln_a = log(sin((1.0 - beta) * th)) + p * log(sin(beta * th)) -
-                   log(sin(th)) / (1.0 - beta);
+            ln_a =
+                log(sin((1.0 - beta) * th)) + p * log(sin(beta * th)) - log(sin(th)) / (1.0 - beta);
         }
         double ln_au = ln_a + ln_u;
         if (ln_au > 6.7) continue; /* exp(-e^6.7) is nothing */
@@ -124,9 +124,10 @@ ce_status ce_kernel_build(double beta, double tolerance, ce_kernel *kernel, ce_e
     }
     if (st == CE_OK) return CE_OK;
     ce_kernel_free(kernel);
-    return ce_fail(err, st, st == CE_E_NOMEM ? "out of memory"
-                                             : "the sum of exponentials does not reach %g for "
-                                               "beta %g",
+    return ce_fail(err, st,
+                   st == CE_E_NOMEM ? "out of memory"
+                                    : "the sum of exponentials does not reach %g for "
+                                      "beta %g",
                    tolerance, beta);
 }
 

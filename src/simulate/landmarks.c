@@ -127,8 +127,8 @@ static void read_curve(const curve *c, ce_ramp_truth *truth)
     truth->tg_K[CE_ONSET] = at[0];
     truth->tg_K[CE_END] = at[1];
     truth->tg_K[CE_HALF_STEP] = first_crossing(c, half_step_function, NULL);
-    truth->tg_K[CE_MIDPOINT] = isfinite(at[0] + at[1]) ? first_crossing(c, midpoint_function, at)
-                                                       : (double)NAN;
+    truth->tg_K[CE_MIDPOINT] =
+        isfinite(at[0] + at[1]) ? first_crossing(c, midpoint_function, at) : (double)NAN;
     truth->step_J_gK = c->glass->share * step_line(c, truth->tg_K[CE_HALF_STEP]);
     truth->peak = -(double)INFINITY;
     for (size_t i = 0; i < c->n; i++) {

@@ -113,8 +113,8 @@ static ce_status columns_of(const ce_simulation *sim, const ce_layout *l, column
     const double factors[] = {sign, sign / mass_mg, s == 2 ? sign / (mass_mg * rate) : 0.0};
     static const int decimals[] = {5, 6, 5};
     c[0] = (column){{"Time", "Zeit"}, times[a], a == 0 ? 3 : 5, a == 0 ? 1.0 : 1.0 / 60.0, 0.0};
-    c[1] = (column){{"Temperature", "Temperatur"}, temperatures[b], 3, 1.0,
-                    b == 0 ? -CE_ZERO_CELSIUS_K : 0.0};
+    c[1] = (column){
+        {"Temperature", "Temperatur"}, temperatures[b], 3, 1.0, b == 0 ? -CE_ZERO_CELSIUS_K : 0.0};
     c[2] = (column){{"Heat flow", "Wärmestrom"}, signals[s], decimals[s], factors[s], 0.0};
     if (s == 2) {
         c[2].name[0] = "Specific heat capacity";
@@ -178,7 +178,8 @@ static void put_head(ce_text *t, const ce_layout *l, const column c[3])
     put_line_end(t, l);
 }
 
-static void put_preamble(ce_text *t, const ce_simulation *sim, const ce_layout *l, const char *sample)
+static void put_preamble(ce_text *t, const ce_simulation *sim, const ce_layout *l,
+                         const char *sample)
 {
     if (!l->preamble) return;
     char number[64];
@@ -187,7 +188,8 @@ static void put_preamble(ce_text *t, const ce_simulation *sim, const ce_layout *
     ce_text_put_line(t, sample == NULL ? "-" : sample);
     put_line_end(t, l);
     ce_text_put(t, de ? "Einwaage: " : "Mass: ");
-    ce_text_put_n(t, number, ce_text_fixed(number, sim->config.instrument.mass_g * 1000.0, 3, l->decimal));
+    ce_text_put_n(t, number,
+                  ce_text_fixed(number, sim->config.instrument.mass_g * 1000.0, 3, l->decimal));
     ce_text_put(t, " mg");
     put_line_end(t, l);
     ce_text_put(t, de ? "Bemerkung: simuliert, keine Messung" : "Comment: simulated, not measured");
@@ -255,8 +257,9 @@ static ce_status check_layout(const ce_layout *l, ce_error *err)
     if (l->delimiter == l->decimal)
         return ce_fail(err, CE_E_ARG, "--delimiter: '%c' is the decimal mark too", l->decimal);
     if (l->delimiter == ' ' && (l->head == CE_HEAD_BARE || strchr(l->signal_unit, ' ') != NULL))
-        return ce_fail(err, CE_E_ARG, "--delimiter: blanks do not separate headers with blanks in "
-                                      "them; choose another header style or unit");
+        return ce_fail(err, CE_E_ARG,
+                       "--delimiter: blanks do not separate headers with blanks in "
+                       "them; choose another header style or unit");
     return CE_OK;
 }
 

@@ -88,8 +88,7 @@ ce_status ce_relax_start(const ce_glass *glass, ce_relax_scheme scheme, double t
         if (st == CE_OK) {
             r->m = calloc(n, sizeof *r->m);
             r->trial = calloc(n, sizeof *r->trial);
-            if (r->m == NULL || r->trial == NULL)
-                st = ce_fail(err, CE_E_NOMEM, "out of memory");
+            if (r->m == NULL || r->trial == NULL) st = ce_fail(err, CE_E_NOMEM, "out of memory");
         }
     }
     if (st == CE_OK) {
@@ -162,8 +161,8 @@ static double try_step(ce_relax *r, double dt_s, double dt_K)
 static void recursive_step(ce_relax *r, double dt_s, double dt_K, int depth)
 {
     double tf = try_step(r, dt_s, dt_K);
-    double change = ce_relax_ln_tau(&r->glass, r->t_K + dt_K, tf) -
-                    ce_relax_ln_tau(&r->glass, r->t_K, r->tf_K);
+    double change =
+        ce_relax_ln_tau(&r->glass, r->t_K + dt_K, tf) - ce_relax_ln_tau(&r->glass, r->t_K, r->tf_K);
     if (depth < MAX_HALVINGS && !(fabs(change) < MAX_LN_TAU_CHANGE)) {
         recursive_step(r, 0.5 * dt_s, 0.5 * dt_K, depth + 1);
         recursive_step(r, 0.5 * dt_s, 0.5 * dt_K, depth + 1);

@@ -17,12 +17,17 @@ ce_simulation_config ce_simulation_config_default(void)
 {
     ce_simulation_config c = {.n_glasses = 1, .seed = 1, .max_step_K = 0.1};
     for (size_t g = 0; g < CE_MAX_GLASSES; g++) {
-        c.glass[g] = (ce_glass){.ln_a = (double)NAN, .h_K = (double)NAN, .x = (double)NAN, .beta = (double)NAN, .ref_K = (double)NAN,
-                                .cp_glass = 1.5, .step = 0.3, .share = 1.0};
+        c.glass[g] = (ce_glass){.ln_a = (double)NAN,
+                                .h_K = (double)NAN,
+                                .x = (double)NAN,
+                                .beta = (double)NAN,
+                                .ref_K = (double)NAN,
+                                .cp_glass = 1.5,
+                                .step = 0.3,
+                                .share = 1.0};
     }
     c.programme.prior_rate_K_min = 10.0;
-    c.instrument =
-        (ce_instrument){.mass_g = 0.010, .interval_s = 0.6, .transient_s = 15.0};
+    c.instrument = (ce_instrument){.mass_g = 0.010, .interval_s = 0.6, .transient_s = 15.0};
     c.scheme = CE_RELAX_RECURSIVE;
     return c;
 }
@@ -84,8 +89,7 @@ static ce_status node_signal(const ce_simulation_config *config, const ce_trace 
                 y = ce_lag_step(y, flow[i - 1 - stretch->first], flow[i - stretch->first],
                                 trace->t_s[i] - trace->t_s[i - 1], m->lag_s);
             hook = hook0 * exp(-t / m->transient_s);
-            signal[i] =
-                power * y + hook + m->offset_mW + m->drift_mW_min * trace->t_s[i] / 60.0;
+            signal[i] = power * y + hook + m->offset_mW + m->drift_mW_min * trace->t_s[i] / 60.0;
         }
     }
     free(flow);
@@ -158,7 +162,8 @@ static ce_status one_truth(const ce_trace *trace, const ce_stretch *stretch, siz
     ce_ramp_truth sample, seen;
     bool spans = false;
     ce_status st = ce_landmarks(trace, glass, g, stretch, &bare, &sample, &spans, err);
-    if (st == CE_OK && spans) st = ce_landmarks(trace, glass, g, stretch, &view, &seen, &spans, err);
+    if (st == CE_OK && spans)
+        st = ce_landmarks(trace, glass, g, stretch, &view, &seen, &spans, err);
     if (st != CE_OK || !spans) return st;
     for (int i = 0; i < CE_CONSTRUCTIONS; i++) seen.tg_K[i] += m->temperature_offset_K;
     seen.fictive_area_K += m->temperature_offset_K;

@@ -21,18 +21,10 @@ enum { STREAM_CERTIFICATE, STREAM_SAMPLE, STREAM_RUNS = 16, STREAM_RUN_ERROR = 8
 #define PROGRAMME_ROUND_K  5.0
 #define MAX_THREADS        64
 
-const char *ce_role_name(ce_role role)
-{
-    static const char *const names[] = {"standard", "unknown", "control"};
-    return (size_t)role < sizeof names / sizeof *names ? names[role] : "";
-}
-
 ce_series_plan ce_series_plan_default(void)
 {
-    return (ce_series_plan){.anchor = CE_HALF_STEP,
-                            .run = ce_simulation_config_default(),
-                            .seed = 1,
-                            .threads = 1};
+    return (ce_series_plan){
+        .anchor = CE_HALF_STEP, .run = ce_simulation_config_default(), .seed = 1, .threads = 1};
 }
 
 void ce_simulated_series_free(ce_simulated_series *series)
@@ -102,9 +94,11 @@ static ce_status place_glass(const ce_series_plan *plan, ce_simulation_config *c
         ce_status st = anchor_of(plan, config, trace, relax, &at, err);
         if (st != CE_OK) return st;
         if (!isfinite(at))
-            return ce_fail(err, CE_E_NOFIT, "--start, --ramp: no recorded heating of the programme "
-                                            "runs from glass to liquid of a sample with a Tg of "
-                                            "%.2f K", tg_K);
+            return ce_fail(err, CE_E_NOFIT,
+                           "--start, --ramp: no recorded heating of the programme "
+                           "runs from glass to liquid of a sample with a Tg of "
+                           "%.2f K",
+                           tg_K);
         if (fabs(at - tg_K) < ANCHOR_TOLERANCE_K) return CE_OK;
         if (i > 0 && fabs(g->ln_a - last_ln_a) > 0.0) {
             double secant = (at - last) / (g->ln_a - last_ln_a);
@@ -135,8 +129,7 @@ static ce_status shift_programme(const ce_series_plan *plan, double tg_K,
     config->programme.step = *steps;
     config->programme.start_K += by;
     config->programme.prior_age_K += by;
-    for (size_t i = 0; i < config->n_peaks && i < CE_MAX_PEAKS; i++)
-        config->peak[i].centre_K += by;
+    for (size_t i = 0; i < config->n_peaks && i < CE_MAX_PEAKS; i++) config->peak[i].centre_K += by;
     return CE_OK;
 }
 
@@ -179,11 +172,10 @@ static ce_status one_sample(const ce_series_plan *plan, size_t i, double common,
         draw(ce_seed_mix(seed, STREAM_CERTIFICATE), &certificate, &unused) != CE_OK ||
         draw(ce_seed_mix(seed, STREAM_SAMPLE), &scatter, &unused) != CE_OK)
         return ce_fail(err, CE_E_NOMEM, "out of memory");
-    s->mn_certified_g_mol =
-        p->role == CE_ROLE_UNKNOWN
-            ? (double)NAN
-            : four_digits(p->mn_g_mol * (1.0 + plan->mn_common_u_rel * common) *
-                          (1.0 + plan->mn_u_rel * certificate));
+    s->mn_certified_g_mol = p->role == CE_UNKNOWN
+                                ? (double)NAN
+                                : four_digits(p->mn_g_mol * (1.0 + plan->mn_common_u_rel * common) *
+                                              (1.0 + plan->mn_u_rel * certificate));
     s->tg_relation_K = plan->relation(p->mn_g_mol, plan->relation_context);
     if (!(s->tg_relation_K > 0.0 && s->tg_relation_K < 3000.0))
         return ce_fail(err, CE_E_DOMAIN, "sample '%s': the relation gives a Tg of %g K at %g g/mol",
@@ -237,8 +229,8 @@ static ce_status check_plan(const ce_series_plan *plan, ce_error *err)
         const char *option;
         double value, high;
     } rules[] = {
-        {"--mn-u", plan->mn_u_rel, 0.25},        {"--mn-common-u", plan->mn_common_u_rel, 0.25},
-        {"--run-sd", plan->run_sd_K, 100.0},     {"--sample-sd", plan->sample_sd_K, 100.0},
+        {"--mn-u", plan->mn_u_rel, 0.25},          {"--mn-common-u", plan->mn_common_u_rel, 0.25},
+        {"--run-sd", plan->run_sd_K, 100.0},       {"--sample-sd", plan->sample_sd_K, 100.0},
         {"--mass-spread", plan->mass_spread, 0.9}, {"--programme-tg", plan->programme_tg_K, 3000.0},
     };
     for (size_t i = 0; i < sizeof rules / sizeof *rules; i++)

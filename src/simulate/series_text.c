@@ -1,6 +1,6 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
-#include "simulate/json.h"
 #include "simulate/text.h"
+#include "simulate/truth.h"
 
 #include <math.h>
 #include <stdlib.h>
@@ -121,34 +121,34 @@ ce_status ce_simulated_series_table(const ce_series_plan *plan, const ce_simulat
 static json_t *reading_json(const ce_simulated_reading *r, const char *file, bool *ok)
 {
     json_t *o = json_object();
-    if (file != NULL) ce_json_set(o, "run", json_string(file), ok);
-    ce_json_set(o, "tg_K", ce_json_number(r->tg_K), ok);
-    ce_json_set(o, "error_K", ce_json_number(r->error_K), ok);
+    if (file != NULL) ce_truth_set(o, "run", json_string(file), ok);
+    ce_truth_set(o, "tg_K", ce_truth_number(r->tg_K), ok);
+    ce_truth_set(o, "error_K", ce_truth_number(r->error_K), ok);
     if (r->simulation == NULL) return o;
     size_t n;
     const ce_ramp_truth *ramp = ce_simulation_truth(r->simulation, &n);
     const ce_instrument *m = &ce_simulation_get_config(r->simulation)->instrument;
-    ce_json_set(o, "mass_g", ce_json_number(m->mass_g), ok);
+    ce_truth_set(o, "mass_g", ce_truth_number(m->mass_g), ok);
     json_t *ramps = json_array();
-    for (size_t i = 0; i < n; i++) ce_json_append(ramps, ce_json_ramp(&ramp[i], ok), ok);
-    ce_json_set(o, "ramps", ramps, ok);
+    for (size_t i = 0; i < n; i++) ce_truth_append(ramps, ce_truth_ramp(&ramp[i], ok), ok);
+    ce_truth_set(o, "ramps", ramps, ok);
     return o;
 }
 
 static json_t *sample_json(const ce_simulated_sample *s, const char *const *file, bool *ok)
 {
     json_t *o = json_object(), *readings = json_array();
-    ce_json_set(o, "sample", json_string(s->name), ok);
-    ce_json_set(o, "role", json_string(ce_role_name(s->role)), ok);
-    ce_json_set(o, "mn_g_mol", ce_json_number(s->mn_g_mol), ok);
-    ce_json_set(o, "mn_certified_g_mol", ce_json_number(s->mn_certified_g_mol), ok);
-    ce_json_set(o, "tg_relation_K", ce_json_number(s->tg_relation_K), ok);
-    ce_json_set(o, "tg_K", ce_json_number(s->tg_K), ok);
-    ce_json_set(o, "ln_a", ce_json_number(s->ln_a), ok);
+    ce_truth_set(o, "sample", json_string(s->name), ok);
+    ce_truth_set(o, "role", json_string(ce_role_name(s->role)), ok);
+    ce_truth_set(o, "mn_g_mol", ce_truth_number(s->mn_g_mol), ok);
+    ce_truth_set(o, "mn_certified_g_mol", ce_truth_number(s->mn_certified_g_mol), ok);
+    ce_truth_set(o, "tg_relation_K", ce_truth_number(s->tg_relation_K), ok);
+    ce_truth_set(o, "tg_K", ce_truth_number(s->tg_K), ok);
+    ce_truth_set(o, "ln_a", ce_truth_number(s->ln_a), ok);
     for (size_t k = 0; k < s->n; k++)
-        ce_json_append(readings, reading_json(&s->reading[k], file == NULL ? NULL : file[k], ok),
-                       ok);
-    ce_json_set(o, "readings", readings, ok);
+        ce_truth_append(readings, reading_json(&s->reading[k], file == NULL ? NULL : file[k], ok),
+                        ok);
+    ce_truth_set(o, "readings", readings, ok);
     return o;
 }
 
@@ -157,25 +157,27 @@ ce_status ce_simulated_series_json(const ce_series_plan *plan, const ce_simulate
 {
     bool ok = true;
     json_t *root = json_object(), *parameters = json_object(), *samples = json_array();
-    ce_json_set(root, "schema", json_string("chainend.simulate-series/1"), &ok);
-    ce_json_set(root, "relation", json_string(words->relation == NULL ? "" : words->relation), &ok);
+    ce_truth_set(root, "schema", json_string("chainend.simulate-series/1"), &ok);
+    ce_truth_set(root, "relation", json_string(words->relation == NULL ? "" : words->relation),
+                 &ok);
     for (size_t i = 0; i < words->n_parameters; i++)
-        ce_json_set(parameters, words->parameter_name[i], ce_json_number(words->parameter[i]), &ok);
-    ce_json_set(root, "parameters", parameters, &ok);
-    ce_json_set(root, "construction",
-                json_string(plan->anchor == CE_FICTIVE ? "fictive" : "half_step"), &ok);
-    ce_json_set(root, "mn_u_rel", ce_json_number(plan->mn_u_rel), &ok);
-    ce_json_set(root, "mn_common_u_rel", ce_json_number(plan->mn_common_u_rel), &ok);
-    ce_json_set(root, "run_sd_K", ce_json_number(plan->run_sd_K), &ok);
-    ce_json_set(root, "sample_sd_K", ce_json_number(plan->sample_sd_K), &ok);
-    ce_json_set(root, "seed", ce_json_seed(plan->seed), &ok);
+        ce_truth_set(parameters, words->parameter_name[i], ce_truth_number(words->parameter[i]),
+                     &ok);
+    ce_truth_set(root, "parameters", parameters, &ok);
+    ce_truth_set(root, "construction",
+                 json_string(plan->anchor == CE_FICTIVE ? "fictive" : "half_step"), &ok);
+    ce_truth_set(root, "mn_u_rel", ce_truth_number(plan->mn_u_rel), &ok);
+    ce_truth_set(root, "mn_common_u_rel", ce_truth_number(plan->mn_common_u_rel), &ok);
+    ce_truth_set(root, "run_sd_K", ce_truth_number(plan->run_sd_K), &ok);
+    ce_truth_set(root, "sample_sd_K", ce_truth_number(plan->sample_sd_K), &ok);
+    ce_truth_set(root, "seed", ce_truth_seed(plan->seed), &ok);
     size_t at = 0;
     for (size_t i = 0; i < series->n; i++) {
         const char *const *file = words->run_file == NULL ? NULL : words->run_file + at;
-        ce_json_append(samples, sample_json(&series->sample[i], file, &ok), &ok);
+        ce_truth_append(samples, sample_json(&series->sample[i], file, &ok), &ok);
         at += series->sample[i].n;
     }
-    ce_json_set(root, "samples", samples, &ok);
-    if (plan->whole_runs) ce_json_set(root, "run", ce_json_config(&plan->run, &ok), &ok);
-    return ce_json_text(root, ok, json, err);
+    ce_truth_set(root, "samples", samples, &ok);
+    if (plan->whole_runs) ce_truth_set(root, "run", ce_truth_config(&plan->run, &ok), &ok);
+    return ce_truth_text(root, ok, json, err);
 }

@@ -18,7 +18,7 @@ void ce_text_put_n(ce_text *t, const char *s, size_t n)
         t->s = p;
         t->room = room;
     }
-    memcpy(t->s + t->n, s, n);
+    if (n > 0) memcpy(t->s + t->n, s, n);
     t->n += n;
 }
 

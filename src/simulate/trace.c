@@ -35,8 +35,10 @@ static ce_status grow(ce_trace *trace, size_t room)
 static ce_status add_node(ce_trace *trace, double t_s, double t_K, bool tick, ce_error *err)
 {
     if (trace->n == CE_MAX_POINTS)
-        return ce_fail(err, CE_E_LIMIT, "the programme needs more than %zu points; raise the "
-                                        "interval or the step", CE_MAX_POINTS);
+        return ce_fail(err, CE_E_LIMIT,
+                       "the programme needs more than %zu points; raise the "
+                       "interval or the step",
+                       CE_MAX_POINTS);
     if (trace->n == trace->room && grow(trace, trace->room < 512 ? 1024 : 2 * trace->room) != CE_OK)
         return ce_fail(err, CE_E_NOMEM, "out of memory");
     trace->t_s[trace->n] = t_s;
@@ -55,8 +57,10 @@ static ce_status add_between(ce_trace *trace, const span *s, double from_s, doub
 {
     double steps = ceil(fabs(s->rate_K_s) * (to_s - from_s) / max_step_K - 1e-9);
     if (!(steps < (double)CE_MAX_POINTS))
-        return ce_fail(err, CE_E_LIMIT, "the programme needs more than %zu points; raise the "
-                                        "interval or the step", CE_MAX_POINTS);
+        return ce_fail(err, CE_E_LIMIT,
+                       "the programme needs more than %zu points; raise the "
+                       "interval or the step",
+                       CE_MAX_POINTS);
     size_t m = steps < 1.0 ? 1 : (size_t)steps;
     ce_status st = CE_OK;
     for (size_t i = 1; i <= m && st == CE_OK; i++) {
@@ -212,8 +216,9 @@ ce_status ce_trace_relax(const ce_simulation_config *config, size_t glass, ce_tr
     double equilibrium = ce_relax_equilibrium(g, p->prior_rate_K_min);
     double start = equilibrium > p->start_K ? equilibrium : p->start_K;
     if (!(start <= 3000.0))
-        return ce_fail(err, CE_E_DOMAIN, "ln-a %g and h %g K: this glass does not melt below 3000 K",
-                       g->ln_a, g->h_K);
+        return ce_fail(err, CE_E_DOMAIN,
+                       "ln-a %g and h %g K: this glass does not melt below 3000 K", g->ln_a,
+                       g->h_K);
     ce_status st = CE_OK;
     if (*relax == NULL)
         st = ce_relax_start(g, config->scheme, start, relax, err);

@@ -322,7 +322,7 @@ static ce_status evaluate(const curve *c, const place *p, const ce_transition_op
     for (size_t i = b.gb; i < b.lb; i++)
         top = fmax(top, (c->y[i] - at(&b.l, c->T[i])) / t->step_height);
     t->overshoot = fmax(0.0, top - 3.0 * c->noise / t->step_height);
-    if (t->overshoot > 0.3) add_flag(t, CE_FLAG_OVERSHOOT, t->overshoot);
+    if (t->overshoot > 1.0) add_flag(t, CE_FLAG_OVERSHOOT, t->overshoot);
     if (t->step_height < 10.0 * c->noise)
         add_flag(t, CE_FLAG_SMALL_STEP, t->step_height / c->noise);
     double shorter = fmin(t->glass.high_K - t->glass.low_K, t->liquid.high_K - t->liquid.low_K);
@@ -378,6 +378,14 @@ static bool wanted(const ce_segment *s, const ce_transition_options *o)
     return o->heating == 0 || s->nth_of_kind == o->heating;
 }
 
+/* A cooling from the liquid earlier in the file has erased the history as well as a heating would. */
+static bool cooled_before(const ce_segment *s, size_t i, const ce_transition *t)
+{
+    for (size_t k = 0; k < i; k++)
+        if (s[k].kind == CE_COOLING && s[k].high_K > t->tg[CE_END].value_K) return true;
+    return false;
+}
+
 ce_status ce_transition_find(const ce_run *run, const ce_transition_options *options,
                              ce_transitions *found, ce_error *err)
 {
@@ -394,7 +402,7 @@ ce_status ce_transition_find(const ce_run *run, const ce_transition_options *opt
         ce_status st =
             find_in(run, &s[i], &o, s[i].kind == CE_COOLING ? -1.0 : 1.0, &t, &score, &e);
         if (st == CE_OK) {
-            if (s[i].kind == CE_HEATING && s[i].nth_of_kind == 1)
+            if (s[i].kind == CE_HEATING && s[i].nth_of_kind == 1 && !cooled_before(s, i, &t))
                 add_flag(&t, CE_FLAG_FIRST_HEATING, 1.0);
             if (ce_run_sign_origin(run) == CE_ORIGIN_GUESSED)
                 add_flag(&t, CE_FLAG_SIGN_GUESSED, 0.0);

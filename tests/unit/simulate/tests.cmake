@@ -1,0 +1,1 @@
+ce_unit_test(simulate run physics refusals)

@@ -1,0 +1,1 @@
+ce_unit_test(transition find)
