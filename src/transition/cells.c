@@ -4,17 +4,17 @@
 #include <math.h>
 #include <stdlib.h>
 
-/* Width of a cell: fine where the curve bends, coarse on the baselines. */
-static double width_at(double off_K)
+/* Width of a cell in units of the finest: fine where the curve bends, coarse on the baselines. */
+static double width_at(double off)
 {
-    const double off = fabs(off_K);
-    return off < 10.0 ? 0.25 : off < 20.0 ? 0.5 : off < 40.0 ? 1.0 : 2.0;
+    off = fabs(off);
+    return off < 40.0 ? 1.0 : off < 80.0 ? 2.0 : off < 160.0 ? 4.0 : 8.0;
 }
 
 ce_status ce_cells_make(const ce_curve *curve, double from_K, double to_K, double centre_K,
-                        ce_cells *cells)
+                        double fine_K, ce_cells *cells)
 {
-    const size_t room = (size_t)fmin((to_K - from_K) / 0.25 + 8.0, (double)curve->n + 1.0);
+    const size_t room = (size_t)fmin((to_K - from_K) / fine_K + 8.0, (double)curve->n + 1.0);
     double *all = malloc(5 * room * sizeof *all);
     *cells = (ce_cells){.n = 0, .low = all};
     if (all == NULL) return CE_E_NOMEM;
@@ -22,23 +22,24 @@ ce_status ce_cells_make(const ce_curve *curve, double from_K, double to_K, doubl
     cells->T = all + 2 * room;
     cells->y = all + 3 * room;
     cells->w = all + 4 * room;
-    size_t i = 0;
-    while (i < curve->n && curve->T[i] < from_K) i++;
+    size_t i = ce_curve_index(curve, from_K);
     while (i < curve->n && curve->T[i] <= to_K && cells->n < room) {
-        const double end = curve->T[i] + width_at(curve->T[i] - centre_K) * 0.999;
-        double sum_T = 0.0, sum_y = 0.0, first = curve->T[i], last = first;
+        const double end =
+            curve->T[i] + fine_K * width_at((curve->T[i] - centre_K) / fine_K) * 0.999;
+        double sum_T = 0.0, sum_y = 0.0, sum_w = 0.0, first = curve->T[i], last = first;
         size_t k = 0;
         for (; i < curve->n && curve->T[i] < end && curve->T[i] <= to_K; i++, k++) {
-            sum_T += curve->T[i];
-            sum_y += curve->y[i];
+            sum_T += curve->w[i] * curve->T[i];
+            sum_y += curve->w[i] * curve->y[i];
+            sum_w += curve->w[i];
             last = curve->T[i];
         }
-        const double mean = sum_T / (double)k;
+        const double mean = sum_T / sum_w;
         const double half = k > 1 ? 0.5 * (last - first) * (double)k / (double)(k - 1) : 0.05;
         const size_t c = cells->n++;
         cells->T[c] = mean;
-        cells->y[c] = sum_y / (double)k;
-        cells->w[c] = (double)k;
+        cells->y[c] = sum_y / sum_w;
+        cells->w[c] = sum_w;
         cells->low[c] = mean - half;
         cells->high[c] = mean + half;
         if (c > 0 && cells->low[c] < cells->high[c - 1]) cells->low[c] = cells->high[c - 1];

@@ -279,7 +279,7 @@ static int solve(problem *p, gsl_vector *shape)
 }
 
 ce_model ce_model_start(bool cooling, double centre_K, double width_K, double sigma,
-                        double hook_from_K)
+                        double inexact, double hook_from_K)
 {
     const double mean[CE_SHAPES] = {[S_TR] = centre_K + 2.0, [S_UNIT] = log(1.2),
                                     [S_X] = log(0.3),        [S_BETA] = 1.0,
@@ -289,6 +289,7 @@ ce_model ce_model_start(bool cooling, double centre_K, double width_K, double si
     ce_model m = {.cooling = cooling,
                   .ref_K = centre_K,
                   .sigma = sigma,
+                  .inexact = inexact,
                   .hook_from_K = hook_from_K,
                   .fine_K = 0.2};
     memcpy(m.centre, mean, sizeof mean);
@@ -317,7 +318,7 @@ ce_status ce_model_fit(const ce_cells *cells, double step, ce_model *model)
         p.alt = p.phi + rows * CE_LINEAR;
         p.q = p.alt + rows * CE_LINEAR;
         for (size_t i = 0; i < n; i++) {
-            p.root[i] = sqrt(cells->w[i]) / sigma;
+            p.root[i] = 1.0 / hypot(sigma / sqrt(cells->w[i]), model->inexact);
             p.y[i] = cells->y[i] * p.root[i];
         }
         memcpy(shape->data, model->shape, sizeof model->shape);
@@ -351,9 +352,31 @@ void ce_model_curve(const ce_model *m, size_t n, const double *low, const double
 ce_lines ce_model_lines(const ce_model *m)
 {
     const double *c = m->linear;
-    return (ce_lines){.ref_K = m->ref_K,
-                      .glass_a = c[L_GLASS],
-                      .glass_b = c[L_GLASS_SLOPE] / lever_K,
-                      .liquid_a = c[L_GLASS] + c[L_STEP],
-                      .liquid_b = (c[L_GLASS_SLOPE] + c[L_STEP_SLOPE]) / lever_K};
+    return (ce_lines){
+        .glass = {m->ref_K, c[L_GLASS], c[L_GLASS_SLOPE] / lever_K},
+        .liquid = {m->ref_K, c[L_GLASS] + c[L_STEP],
+                   (c[L_GLASS_SLOPE] + c[L_STEP_SLOPE]) / lever_K},
+    };
+}
+
+double ce_model_fictive(const ce_model *m)
+{
+    enum { CELLS = 260 };
+    double low[CELLS], high[CELLS], y[CELLS], area = 0.0;
+    for (int i = 0; i < CELLS; i++) {
+        low[i] = m->ref_K - 180.0 + i;
+        high[i] = low[i] + 1.0;
+    }
+    ce_model_curve(m, CELLS, low, high, y);
+    const ce_lines l = ce_model_lines(m);
+    for (int i = 0; i < CELLS; i++) area += y[i] - ce_line_at(&l.glass, low[i] + 0.5);
+    const double T2 = high[CELLS - 1], d0 = ce_line_at(&l.liquid, T2) - ce_line_at(&l.glass, T2);
+    const double d1 = l.liquid.slope - l.glass.slope, root = d0 * d0 - 2.0 * d1 * area;
+    return root < 0.0 ? (double)NAN : T2 - 2.0 * area / (d0 + sqrt(root));
+}
+
+void ce_model_move(ce_model *m, size_t parameter, double by)
+{
+    if (parameter < CE_SHAPES) m->shape[parameter] += by;
+    else m->linear[parameter - CE_SHAPES] += by;
 }

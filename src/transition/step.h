@@ -10,15 +10,22 @@
 #include <stdbool.h>
 #include <stddef.h>
 
-/* A segment on strictly rising temperature, the signal turned so that the liquid lies above the
- * glass: endothermic up on heating, exothermic up on cooling. */
+/* A segment on rising temperature, at most a few thousand points (means over equal cells of
+ * temperature: sorts and bounds the cost in one pass), the signal turned so that the liquid lies
+ * above the glass: endothermic up on heating, exothermic up on cooling. */
 typedef struct {
     size_t n;
-    double *T, *y;   /* owned                                                                   */
-    bool cooling;    /* measured on the way down                                                */
-    double noise;    /* standard deviation of one point, robust; 0 is possible                  */
-    double effective; /* independent points per point, 0 < e <= 1 (autocorrelation)             */
+    double *T, *y, *w; /* owned, one block; w = number of points in the mean                    */
+    bool cooling;      /* measured on the way down                                              */
+    double noise;      /* standard deviation of one recorded point, robust; 0 is possible       */
+    double spacing;    /* mean distance of the points, K                                        */
 } ce_curve;
+
+/* n >= 2 points in any order. CE_OK | CE_E_NOMEM. */
+ce_status ce_curve_make(size_t n, const double *T, const double *y, bool cooling, ce_curve *curve);
+void ce_curve_free(ce_curve *curve);
+/* First point at or above a temperature; n when there is none. */
+size_t ce_curve_index(const ce_curve *curve, double T);
 
 /* Means over cells of temperature, fine near the step, coarse away from it. */
 typedef struct {
@@ -39,19 +46,24 @@ typedef struct {
     double shape[CE_SHAPES];   /* see model.c                                                   */
     double linear[CE_LINEAR];
     double centre[CE_SHAPES];  /* of the prior                                                  */
-    double sigma;              /* sd of a point used for the weights                            */
+    double sigma;              /* sd of a recorded point, for the weights                       */
+    double inexact;            /* sd of what the model itself cannot follow, any cell           */
     double misfit;             /* reduced chi-square against sigma                              */
     double cov[CE_FREE][CE_FREE]; /* of shape and linear parameters at sigma                    */
     size_t iterations;
 } ce_model;
 
-/* Lines in the curve's own orientation: y = a + b (T - ref). */
+/* Both baselines, in the curve's own orientation. */
 typedef struct {
-    double ref_K, glass_a, glass_b, liquid_a, liquid_b;
+    ce_line glass, liquid;
 } ce_lines;
+static inline double ce_line_at(const ce_line *line, double T)
+{
+    return line->at_ref + line->slope * (T - line->ref_K);
+}
 
 ce_status ce_cells_make(const ce_curve *curve, double from_K, double to_K, double centre_K,
-                        ce_cells *cells);
+                        double fine_K, ce_cells *cells);
 void ce_cells_free(ce_cells *cells);
 
 /* Fit from a start: ce_model_start() or an earlier fit; sigma and the kind of model are taken from
@@ -59,10 +71,14 @@ void ce_cells_free(ce_cells *cells);
 ce_status ce_model_fit(const ce_cells *cells, double step, ce_model *model);
 /* A first guess for a step of this half-step temperature and width; sigma > 0. */
 ce_model ce_model_start(bool cooling, double centre_K, double width_K, double sigma,
-                        double hook_from_K);
+                        double inexact, double hook_from_K);
 /* The model at n cells, with the lines it is built on. */
 void ce_model_curve(const ce_model *model, size_t n, const double *low, const double *high,
                     double *y);
 ce_lines ce_model_lines(const ce_model *model);
+/* Fictive temperature by equal areas under the model, taken over all of its curve. */
+double ce_model_fictive(const ce_model *model);
+/* Move one of the CE_FREE parameters, shape first. */
+void ce_model_move(ce_model *model, size_t parameter, double by);
 
 #endif
