@@ -3,6 +3,7 @@
 #include "transition/flags.h"
 
 #include <math.h>
+#include <stdio.h>
 #include <stdlib.h>
 #include <string.h>
 
@@ -98,6 +99,7 @@ static ce_status find_places(const ce_run *run, const ce_segment *s, const ce_cu
         return ce_fail(err, CE_E_REFUSED, "no step in segment %zu: one of %.2g %s would have been seen",
                        s->index, detectable * (isnan(factor) ? 1.0 : factor),
                        isnan(factor) ? ce_signal_unit(ce_run_signal_kind(run)) : "J/(g K)");
+    for (size_t i = 0; i < n && getenv("CE_DEBUG"); i++) fprintf(stderr, "place %.1f %.1f step %.3g score %.2f\n", place[i].low_K, place[i].high_K, place[i].step, place[i].score);
     found->score = place[0].score;
     while (n > 1 && (place[n - 1].score < 6.0 || place[n - 1].step < 0.1 * place[0].step)) n--;
     for (size_t i = 0; i < n && (i == 0 || isnan(o->glass.low_K)); i++) {
