@@ -15,13 +15,14 @@ ce_status ce_cells_make(const ce_curve *curve, double from_K, double to_K, doubl
                         double fine_K, ce_cells *cells)
 {
     const size_t room = (size_t)fmin((to_K - from_K) / fine_K + 8.0, (double)curve->n + 1.0);
-    double *all = malloc(5 * room * sizeof *all);
+    double *all = calloc(6 * room, sizeof *all);
     *cells = (ce_cells){.n = 0, .low = all};
     if (all == NULL) return CE_E_NOMEM;
     cells->high = all + room;
     cells->T = all + 2 * room;
     cells->y = all + 3 * room;
     cells->w = all + 4 * room;
+    cells->sd = all + 5 * room;
     size_t i = ce_curve_index(curve, from_K);
     while (i < curve->n && curve->T[i] <= to_K && cells->n < room) {
         const double end =

@@ -9,6 +9,7 @@
 #include <string.h>
 
 enum { TRACE = 700, TRIALS = 5 };
+static const double inexact_start = 0.02; /* and of a start-up, relative */
 static const double inexact_steps = 3e-4; /* what the model may miss of a step, any cell        */
 
 /* Room for one trace. */
@@ -141,17 +142,26 @@ static ce_status fit_model(const by_windows *s, ce_window range, by_model *f)
     const double centre = s->p.at[CE_HALF_STEP];
     const double fine = clamp(s->width / 16.0, fmax(0.1, s->curve->spacing), 0.4);
     f->model = ce_model_start(s->curve->cooling, centre, s->width, fmax(s->curve->noise, 1e-9 * s->p.step),
-                              inexact_steps * s->p.step,
                               s->curve->cooling ? s->curve->T[s->curve->n - 1] : s->curve->T[0]);
     f->model.fine_K = clamp(s->width / 30.0, 0.1, 0.25);
     ce_status st = ce_cells_make(s->curve, range.low_K, range.high_K, centre, fine, &f->cells);
     if (st != CE_OK) return st;
+    /* below the glass window the start-up need not be the exponential of the model */
+    for (size_t i = 0; i < f->cells.n; i++) {
+        const double T = f->cells.T[i];
+        const double off = T < s->glass.low_K ? f->cells.y[i] - ce_line_at(&s->g.line, T) : 0.0;
+        f->cells.sd[i] = hypot(inexact_steps * s->p.step, inexact_start * off);
+    }
+    const ce_model start = f->model;
     st = ce_model_fit(&f->cells, s->p.step, &f->model);
-    if (st != CE_E_NOMEM && !s->curve->cooling && !(st == CE_OK && f->model.misfit < 1.3)) {
-        ce_model aged = f->model;
+    if (s->curve->cooling || st == CE_E_NOMEM) return st;
+    /* annealing and lag where the simple history does not do: from there, then from the start */
+    for (int k = 0; k < 2 && (st != CE_OK || f->model.misfit > (k == 0 ? 1.3 : 3.0)); k++) {
+        ce_model aged = k == 0 && st == CE_OK ? f->model : start;
         aged.aged = true;
-        if (ce_model_fit(&f->cells, s->p.step, &aged) == CE_OK &&
-            !(st == CE_OK && aged.misfit > 0.9 * f->model.misfit)) {
+        const ce_status then = ce_model_fit(&f->cells, s->p.step, &aged);
+        if (then == CE_E_NOMEM) return then;
+        if (then == CE_OK && (st != CE_OK || aged.misfit < 0.9 * f->model.misfit)) {
             f->model = aged;
             st = CE_OK;
         }
@@ -169,8 +179,7 @@ ce_status ce_read_step(const ce_curve *curve, const ce_place *place, ce_window e
     ce_status st = settle_windows(&s, place, o, err);
     if (st == CE_OK) {
         const double tolerance = fmax(0.08 * s.p.step, 4.0 * curve->noise);
-        out->range.low_K = ce_reach(curve, s.glass.high_K, s.glass.low_K,
-                                    fmax(edge.low_K, curve->T[0] + 1.0), 3.0 * tolerance);
+        out->range.low_K = fmax(edge.low_K, curve->T[0] + 1.0);
         out->range.high_K = ce_reach(curve, s.liquid.low_K, s.liquid.high_K,
                                      fmin(edge.high_K, curve->T[curve->n - 1]), tolerance);
         out->glass = s.glass;

@@ -279,7 +279,7 @@ static int solve(problem *p, gsl_vector *shape)
 }
 
 ce_model ce_model_start(bool cooling, double centre_K, double width_K, double sigma,
-                        double inexact, double hook_from_K)
+                        double hook_from_K)
 {
     const double mean[CE_SHAPES] = {[S_TR] = centre_K + 2.0, [S_UNIT] = log(1.2),
                                     [S_X] = log(0.3),        [S_BETA] = 1.0,
@@ -289,12 +289,14 @@ ce_model ce_model_start(bool cooling, double centre_K, double width_K, double si
     ce_model m = {.cooling = cooling,
                   .ref_K = centre_K,
                   .sigma = sigma,
-                  .inexact = inexact,
                   .hook_from_K = hook_from_K,
                   .fine_K = 0.2};
     memcpy(m.centre, mean, sizeof mean);
     memcpy(m.shape, mean, sizeof mean);
-    m.shape[S_UNIT] = log(fmin(fmax(width_K / 8.0, 0.5), 3.0));
+    /* broad steps go with small Tr^2/h and x: polystyrene to poly(vinyl chloride) on one line */
+    const double broad = fmin(fmax((width_K - 6.0) / 7.0, 0.0), 1.0);
+    m.shape[S_UNIT] = 0.55 - 1.1 * broad;
+    m.shape[S_X] = -0.85 - 0.75 * broad;
     return m;
 }
 
@@ -318,7 +320,7 @@ ce_status ce_model_fit(const ce_cells *cells, double step, ce_model *model)
         p.alt = p.phi + rows * CE_LINEAR;
         p.q = p.alt + rows * CE_LINEAR;
         for (size_t i = 0; i < n; i++) {
-            p.root[i] = 1.0 / hypot(sigma / sqrt(cells->w[i]), model->inexact);
+            p.root[i] = 1.0 / hypot(sigma / sqrt(cells->w[i]), cells->sd[i]);
             p.y[i] = cells->y[i] * p.root[i];
         }
         memcpy(shape->data, model->shape, sizeof model->shape);

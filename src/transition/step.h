@@ -32,6 +32,7 @@ typedef struct {
     size_t n;
     double *low, *high; /* the cells                                                            */
     double *T, *y, *w;  /* mean temperature, mean signal, number of points                      */
+    double *sd;         /* what the model may miss there, besides the noise; 0 to begin with    */
 } ce_cells;
 
 enum { CE_SHAPES = 9, CE_LINEAR = 6, CE_FREE = CE_SHAPES + CE_LINEAR };
@@ -47,7 +48,6 @@ typedef struct {
     double linear[CE_LINEAR];
     double centre[CE_SHAPES];  /* of the prior                                                  */
     double sigma;              /* sd of a recorded point, for the weights                       */
-    double inexact;            /* sd of what the model itself cannot follow, any cell           */
     double misfit;             /* reduced chi-square against sigma                              */
     double cov[CE_FREE][CE_FREE]; /* of shape and linear parameters at sigma                    */
     size_t iterations;
@@ -71,7 +71,7 @@ void ce_cells_free(ce_cells *cells);
 ce_status ce_model_fit(const ce_cells *cells, double step, ce_model *model);
 /* A first guess for a step of this half-step temperature and width; sigma > 0. */
 ce_model ce_model_start(bool cooling, double centre_K, double width_K, double sigma,
-                        double inexact, double hook_from_K);
+                        double hook_from_K);
 /* The model at n cells, with the lines it is built on. */
 void ce_model_curve(const ce_model *model, size_t n, const double *low, const double *high,
                     double *y);
