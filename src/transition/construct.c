@@ -9,23 +9,19 @@ static double height(const ce_trace *t, const ce_lines *l, size_t i)
     return (t->y[i] - g) / (ce_line_at(&l->liquid, t->T[i]) - g);
 }
 
-/* First crossing of a normalised height going up that the trace does not take back before it has
- * risen to 0.75: the index after it, n when there is none. */
+/* First crossing of a normalised height going up: the index after it, n when there is none. */
 static size_t crossing(const ce_trace *t, const ce_lines *l, double f, double *T)
 {
-    size_t found = t->n;
     double before = height(t, l, 0);
     for (size_t i = 1; i < t->n; i++) {
         const double h = height(t, l, i);
-        if (h < f) found = t->n;
-        else if (found == t->n && before < f) {
-            found = i;
+        if (before < f && h >= f) {
             *T = t->T[i - 1] + (t->T[i] - t->T[i - 1]) * (f - before) / (h - before);
+            return i;
         }
-        if (h > 0.75 && found < t->n) break;
         before = h;
     }
-    return found;
+    return t->n;
 }
 
 static double slope_at(const ce_trace *t, size_t i)

@@ -8,7 +8,7 @@
 #include <stdio.h>
 #include <string.h>
 
-enum { TRACE = 700, TRIALS = 5 };
+enum { TRACE = 600 };
 static const double inexact_start = 0.02; /* and of a start-up, relative */
 static const double inexact_steps = 3e-4; /* what the model may miss of a step, any cell        */
 
@@ -121,61 +121,227 @@ static ce_status settle_windows(by_windows *s, const ce_place *place,
 
 /* ---- the model ---------------------------------------------------------------------------- */
 
-static bool construct_model(const ce_model *m, tracing *t, ce_lines *lines, ce_points *p)
-{
-    *lines = ce_model_lines(m);
-    ce_model_curve(m, t->trace.n, t->low, t->high, t->y);
-    if (!ce_construct(&t->trace, lines, t->T[t->trace.n - 1], p)) return false;
-    p->at[CE_FICTIVE] = ce_model_fictive(m);
-    return true;
-}
+/* Coarse cells far below, where the fictive temperature comes from, then the cells of the trace. */
+enum { FAR = 6, MODEL = FAR + TRACE };
+typedef struct {
+    size_t n; /* of all cells                                                                   */
+    double low[MODEL], high[MODEL], tf[MODEL], step[MODEL], phi[MODEL * CE_LINEAR];
+    double T[TRACE], y[TRACE], correction[TRACE];
+} modelling;
 
 typedef struct {
     ce_model model;
     ce_cells cells;
+    ce_design design;
     ce_lines lines;
     ce_points p;
+    double gradient[CE_FREE][CE_CONSTRUCTIONS + 2]; /* of constructions, step height, width    */
 } by_model;
+
+static void model_cells(modelling *m, double centre, double width)
+{
+    const double d = clamp(width / 50.0, 0.06, 0.3), from = centre - clamp(3.0 * width, 15.0, 40.0);
+    const double to = centre + clamp(2.5 * width, 15.0, 35.0);
+    for (int i = 0; i < FAR; i++) {
+        m->low[i] = from - 12.0 * (FAR - i);
+        m->high[i] = m->low[i] + 12.0;
+    }
+    m->n = FAR;
+    for (size_t i = 0; i < TRACE && from + d * (double)i < to; i++, m->n++) {
+        m->low[FAR + i] = from + d * (double)i;
+        m->high[FAR + i] = m->low[FAR + i] + d;
+        m->T[i] = m->low[FAR + i] + 0.5 * d;
+        m->correction[i] = 0.0;
+    }
+    m->high[FAR - 1] = from;
+}
+
+/* Constructions under a model whose columns are in m. */
+static bool construct_model(const ce_model *model, modelling *m, ce_lines *lines, ce_points *p)
+{
+    const size_t n = m->n - FAR;
+    ce_model_combine(model, n, m->phi + FAR * CE_LINEAR, m->y);
+    for (size_t i = 0; i < n; i++) m->y[i] += m->correction[i];
+    *lines = ce_model_lines(model);
+    const ce_trace trace = {n, m->T, m->y};
+    if (!ce_construct(&trace, lines, m->T[n - 1], p)) return false;
+    p->at[CE_FICTIVE] = m->tf[0] + ce_model_lag(model);
+    return true;
+}
+
+static void model_columns(const ce_model *model, modelling *m)
+{
+    ce_model_columns(model, m->n, m->low, m->high, m->phi, m->tf, m->step);
+}
+
+/* Derivatives of everything by every parameter, by differences. */
+static bool gradients(by_model *f, modelling *m)
+{
+    for (size_t a = CE_FREE; a-- > 0;) { /* linear ones first: they leave the columns alone     */
+        const double h = ce_model_increment(&f->model, a);
+        memset(f->gradient[a], 0, sizeof f->gradient[a]);
+        if (h == 0.0) continue;
+        ce_model moved = f->model;
+        ce_lines lines;
+        ce_points p;
+        ce_model_move(&moved, a, h);
+        if (a < CE_SHAPES) model_columns(&moved, m);
+        if (!construct_model(&moved, m, &lines, &p)) return false;
+        double *g = f->gradient[a];
+        for (int k = 0; k < CE_CONSTRUCTIONS; k++) g[k] = (p.at[k] - f->p.at[k]) / h;
+        g[CE_CONSTRUCTIONS] = (p.step - f->p.step) / h;
+        g[CE_CONSTRUCTIONS + 1] = g[CE_END] - g[CE_ONSET];
+    }
+    model_columns(&f->model, m);
+    return true;
+}
+
+static void weigh_cells(const by_windows *s, ce_cells *cells)
+{
+    /* below the glass window the start-up need not be the exponential of the model */
+    for (size_t i = 0; i < cells->n; i++) {
+        const double T = cells->T[i];
+        const double off =
+            T < s->glass.low_K ? cells->y[i] - ce_line_at(&s->g.line, T) : 0.0;
+        cells->sd[i] = hypot(inexact_steps * s->p.step, inexact_start * off);
+    }
+}
 
 static ce_status fit_model(const by_windows *s, ce_window range, by_model *f)
 {
+    const ce_curve *c = s->curve;
     const double centre = s->p.at[CE_HALF_STEP];
-    const double fine = clamp(s->width / 16.0, fmax(0.1, s->curve->spacing), 0.4);
-    f->model = ce_model_start(s->curve->cooling, centre, s->width, fmax(s->curve->noise, 1e-9 * s->p.step),
-                              s->curve->cooling ? s->curve->T[s->curve->n - 1] : s->curve->T[0]);
-    f->model.fine_K = clamp(s->width / 30.0, 0.1, 0.25);
-    ce_status st = ce_cells_make(s->curve, range.low_K, range.high_K, centre, fine, &f->cells);
+    const double fine = clamp(s->width / 16.0, fmax(0.1, c->spacing), 0.4);
+    ce_model start = ce_model_start(c->cooling, centre, s->width,
+                                    fmax(c->noise, 1e-9 * s->p.step),
+                                    c->cooling ? c->T[c->n - 1] : c->T[0]);
+    start.fine_K = clamp(s->width / 30.0, 0.1, 0.25);
+    ce_status st = ce_cells_make(c, range.low_K, range.high_K, centre, fine, &f->cells);
     if (st != CE_OK) return st;
-    /* below the glass window the start-up need not be the exponential of the model */
-    for (size_t i = 0; i < f->cells.n; i++) {
-        const double T = f->cells.T[i];
-        const double off = T < s->glass.low_K ? f->cells.y[i] - ce_line_at(&s->g.line, T) : 0.0;
-        f->cells.sd[i] = hypot(inexact_steps * s->p.step, inexact_start * off);
-    }
-    const ce_model start = f->model;
-    st = ce_model_fit(&f->cells, s->p.step, &f->model);
-    if (s->curve->cooling || st == CE_E_NOMEM) return st;
+    weigh_cells(s, &f->cells);
+    f->model = start;
+    st = ce_model_fit(&f->cells, s->p.step, &f->model, &f->design);
+    if (c->cooling || st == CE_E_NOMEM) return st;
     /* annealing and lag where the simple history does not do: from there, then from the start */
     for (int k = 0; k < 2 && (st != CE_OK || f->model.misfit > (k == 0 ? 1.3 : 3.0)); k++) {
         ce_model aged = k == 0 && st == CE_OK ? f->model : start;
+        ce_design design = {0};
         aged.aged = true;
-        const ce_status then = ce_model_fit(&f->cells, s->p.step, &aged);
-        if (then == CE_E_NOMEM) return then;
+        const ce_status then = ce_model_fit(&f->cells, s->p.step, &aged, &design);
         if (then == CE_OK && (st != CE_OK || aged.misfit < 0.9 * f->model.misfit)) {
+            ce_design_free(&f->design);
+            f->design = design;
             f->model = aged;
             st = CE_OK;
+        } else {
+            ce_design_free(&design);
+            if (then == CE_E_NOMEM) return then;
         }
     }
     return st;
 }
 
+static double variance(const by_model *f, size_t quantity)
+{
+    double v = 0.0;
+    for (size_t a = 0; a < CE_FREE; a++)
+        for (size_t b = 0; b < CE_FREE; b++)
+            v += f->gradient[a][quantity] * f->model.cov[a][b] * f->gradient[b][quantity];
+    return fmax(v, 0.0) * fmax(f->model.misfit, 1.0);
+}
+
+/* Add the squared effect of reweighting the cells to sum. */
+static ce_status add_effect(const by_model *f, const double *share, double factor,
+                            double sum[CE_CONSTRUCTIONS + 2])
+{
+    double shift[CE_FREE];
+    const ce_status st = ce_model_reweigh(&f->model, &f->design, share, shift);
+    if (st != CE_OK) return st;
+    for (int k = 0; k < CE_CONSTRUCTIONS + 2; k++) {
+        double effect = 0.0;
+        for (size_t a = 0; a < CE_FREE; a++) effect += f->gradient[a][k] * shift[a];
+        if (isfinite(effect)) sum[k] += factor * effect * effect;
+    }
+    return CE_OK;
+}
+
+enum { BLOCKS = 10 };
+/* Window part: what leaving out one stretch of curve after the other does to the result, to first
+ * order (a delete-a-block jackknife over temperature). */
+static ce_status window_part(const by_model *f, double sum[CE_CONSTRUCTIONS + 2])
+{
+    const size_t n = f->cells.n;
+    double *share = malloc(n * sizeof *share);
+    ce_status st = share == NULL ? CE_E_NOMEM : CE_OK;
+    for (size_t b = 0; b < BLOCKS && st == CE_OK; b++) {
+        for (size_t i = 0; i < n; i++) share[i] = i * BLOCKS / n == b ? 0.1 : 1.0;
+        st = add_effect(f, share, (BLOCKS - 1.0) / BLOCKS, sum);
+    }
+    free(share);
+    return st;
+}
+
+/* What the curve says beyond the model, smoothed, as far as it stands out of the noise. */
+static void correct(const by_windows *s, const by_model *f, modelling *m)
+{
+    (void)s;
+    (void)f;
+    (void)m;
+}
+
+static ce_status model_uncertainty(const by_windows *s, by_model *f, modelling *m,
+                                   const ce_transition_options *o, ce_finding *out)
+{
+    double sum[CE_CONSTRUCTIONS + 2] = {0};
+    if (!gradients(f, m)) return CE_E_NOFIT;
+    if (o->ensemble && window_part(f, sum) == CE_E_NOMEM) return CE_E_NOMEM;
+    const double least = 0.01 * s->curve->spacing + 1e-3;
+    for (int k = 0; k < CE_CONSTRUCTIONS; k++) {
+        out->u_noise[k] = hypot(sqrt(variance(f, (size_t)k)), least);
+        out->u_window[k] = sqrt(sum[k]);
+    }
+    out->step_u = sqrt(variance(f, CE_CONSTRUCTIONS) + sum[CE_CONSTRUCTIONS]);
+    out->width_u = sqrt(variance(f, CE_CONSTRUCTIONS + 1) + sum[CE_CONSTRUCTIONS + 1]);
+    return CE_OK;
+}
+
+/* The model's lines and constructions, where it follows the curve. */
+static ce_status take_model(const by_windows *s, const ce_transition_options *o, ce_finding *out)
+{
+    by_model f = {0};
+    modelling *m = malloc(sizeof *m);
+    ce_status st = m == NULL ? CE_E_NOMEM : fit_model(s, out->range, &f);
+    if (st == CE_OK) {
+        if (getenv("CE_DEBUG"))
+            fprintf(stderr, "%d age %.2f at %.2f lag %.2f cells %zu it %zu misfit %.3g range %.1f..%.1f w %.2f noise/step %.2g | TR %.2f unit %.2f x %.2f beta %.2f cool %.2f hook %.2f\n", f.model.aged, f.model.shape[5],f.model.shape[6],f.model.shape[7],f.cells.n,
+                        f.model.iterations, f.model.misfit, out->range.low_K, out->range.high_K,
+                        s->width, s->curve->noise / s->p.step, f.model.shape[0], f.model.shape[1],
+                        f.model.shape[2], f.model.shape[3], f.model.shape[4], f.model.shape[8]);
+        model_cells(m, s->p.at[CE_HALF_STEP], s->width);
+        model_columns(&f.model, m);
+        if (construct_model(&f.model, m, &f.lines, &f.p)) {
+            correct(s, &f, m);
+            st = model_uncertainty(s, &f, m, o, out);
+        } else st = CE_E_NOFIT;
+    }
+    if (st == CE_OK) {
+        out->points = f.p;
+        out->lines = f.lines;
+        out->model = true;
+    }
+    ce_cells_free(&f.cells);
+    ce_design_free(&f.design);
+    free(m);
+    return st;
+}
+
 ce_status ce_read_step(const ce_curve *curve, const ce_place *place, ce_window edge,
-                      const ce_transition_options *o, ce_finding *out, ce_error *err)
+                       const ce_transition_options *o, ce_finding *out, ce_error *err)
 {
     tracing *t = malloc(sizeof *t);
+    memset(out, 0, sizeof *out);
     if (t == NULL) return ce_fail(err, CE_E_NOMEM, "out of memory");
     by_windows s = {.curve = curve, .edge = edge, .t = t};
-    memset(out, 0, sizeof *out);
     ce_status st = settle_windows(&s, place, o, err);
     if (st == CE_OK) {
         const double tolerance = fmax(0.08 * s.p.step, 4.0 * curve->noise);
@@ -187,24 +353,10 @@ ce_status ce_read_step(const ce_curve *curve, const ce_place *place, ce_window e
         out->lines = s.lines;
         out->points = s.p;
         out->noise = curve->noise;
-        by_model f = {0};
-        if (fit_model(&s, out->range, &f) == CE_OK) {
-            lay_out(t, s.p.at[CE_HALF_STEP] - 40.0, s.p.at[CE_HALF_STEP] + 30.0, 0.1);
-            if (getenv("CE_DEBUG"))
-                fprintf(stderr, "%d age %.2f at %.2f lag %.2f cells %zu it %zu misfit %.3g range %.1f..%.1f w %.2f noise/step %.2g | TR %.2f unit %.2f x %.2f beta %.2f cool %.2f hook %.2f\n", f.model.aged, f.model.shape[5],f.model.shape[6],f.model.shape[7],f.cells.n,
-                        f.model.iterations, f.model.misfit, out->range.low_K, out->range.high_K,
-                        s.width, curve->noise / s.p.step, f.model.shape[0], f.model.shape[1],
-                        f.model.shape[2], f.model.shape[3], f.model.shape[4], f.model.shape[8]);
-            ce_points p;
-            ce_lines lines;
-            if (construct_model(&f.model, t, &lines, &p)) {
-                out->points = p;
-                out->lines = lines;
-                out->model = true;
-            }
-        }
-        ce_cells_free(&f.cells);
         for (int k = 0; k < CE_CONSTRUCTIONS; k++) out->u_noise[k] = out->u_window[k] = 0.1;
+        st = take_model(&s, o, out);
+        if (st == CE_E_NOMEM) (void)ce_fail(err, st, "out of memory");
+        else st = CE_OK;
     }
     free(t);
     return st;

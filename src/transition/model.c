@@ -213,44 +213,78 @@ static int jacobian(const gsl_vector *shape, void *data, gsl_matrix *J)
     return GSL_SUCCESS;
 }
 
-/* Covariance of all parameters at the solution, from the joint normal equations. */
-static int covariance(problem *p, const double *shape)
+/* Normal matrix of all parameters with its priors, the rows weighted by share (NULL = 1). */
+static gsl_matrix *normal_matrix(const ce_model *m, const ce_design *d, const double *share)
+{
+    gsl_matrix *N = gsl_matrix_calloc(CE_FREE, CE_FREE);
+    if (N == NULL) return NULL;
+    for (size_t a = 0; a < CE_FREE; a++)
+        for (size_t b = 0; b <= a; b++) {
+            const double *Ja = d->J + a * d->n, *Jb = d->J + b * d->n;
+            double dot = 0.0;
+            for (size_t i = 0; i < d->cells; i++)
+                dot += (share == NULL ? 1.0 : share[i]) * Ja[i] * Jb[i];
+            for (size_t i = d->cells; i < d->n; i++) dot += Ja[i] * Jb[i];
+            if (a == b) {
+                if (a < CE_SHAPES) dot += 1.0 / (prior_sd[a] * prior_sd[a]);
+                else if (!(dot > 0.0)) dot = 1e300; /* a parameter that is not used            */
+                dot *= 1.0 + 1e-10;
+            }
+            gsl_matrix_set(N, a, b, dot);
+            gsl_matrix_set(N, b, a, dot);
+        }
+    return N;
+}
+
+/* The Jacobian of all parameters at the solution, and their covariance. */
+static int linearise(problem *p, const double *shape, const double *res, ce_design *d)
 {
     ce_model *m = p->m;
-    const size_t n = p->rows;
-    double *J = malloc(n * CE_FREE * sizeof *J);
-    if (J == NULL) return GSL_ENOMEM;
-    memset(J, 0, n * CE_SHAPES * sizeof *J);
+    d->n = p->rows;
+    d->cells = p->cells->n;
+    d->J = calloc(d->n * (CE_FREE + 1), sizeof *d->J);
+    if (d->J == NULL) return GSL_ENOMEM;
+    d->r = d->J + d->n * CE_FREE;
+    memcpy(d->r, res, d->n * sizeof *res);
     for (size_t j = 0; j < CE_SHAPES; j++)
-        if (active(m, j)) slope_by(p, shape, j, J + j * n);
+        if (active(m, j)) slope_by(p, shape, j, d->J + j * d->n);
     for (size_t k = 0; k < CE_LINEAR; k++)
-        for (size_t i = 0; i < n; i++) J[(CE_SHAPES + k) * n + i] = p->phi[i * CE_LINEAR + k];
-    gsl_matrix *N = gsl_matrix_calloc(CE_FREE, CE_FREE);
-    int status = N == NULL ? GSL_ENOMEM : GSL_SUCCESS;
-    if (status == GSL_SUCCESS) {
-        for (size_t a = 0; a < CE_FREE; a++)
-            for (size_t b = 0; b <= a; b++) {
-                double dot = 0.0;
-                for (size_t i = 0; i < n; i++) dot += J[a * n + i] * J[b * n + i];
-                if (a == b) {
-                    if (a < CE_SHAPES) dot += 1.0 / (prior_sd[a] * prior_sd[a]);
-                    else if (!p->used[a - CE_SHAPES]) dot = 1e300;
-                    dot *= 1.0 + 1e-10;
-                }
-                gsl_matrix_set(N, a, b, dot);
-                gsl_matrix_set(N, b, a, dot);
-            }
-        status = gsl_linalg_cholesky_decomp1(N);
-        if (status == GSL_SUCCESS) status = gsl_linalg_cholesky_invert(N);
-    }
+        for (size_t i = 0; p->used[k] && i < d->n; i++)
+            d->J[(CE_SHAPES + k) * d->n + i] = p->phi[i * CE_LINEAR + k];
+    gsl_matrix *N = normal_matrix(m, d, NULL);
+    if (N == NULL) return GSL_ENOMEM;
+    int status = gsl_linalg_cholesky_decomp1(N);
+    if (status == GSL_SUCCESS) status = gsl_linalg_cholesky_invert(N);
     for (size_t a = 0; status == GSL_SUCCESS && a < CE_FREE; a++)
         for (size_t b = 0; b < CE_FREE; b++) m->cov[a][b] = gsl_matrix_get(N, a, b);
     gsl_matrix_free(N);
-    free(J);
     return status;
 }
 
-static int solve(problem *p, gsl_vector *shape)
+void ce_design_free(ce_design *design)
+{
+    free(design->J);
+    *design = (ce_design){0};
+}
+
+ce_status ce_model_reweigh(const ce_model *m, const ce_design *d, const double *share,
+                           double shift[CE_FREE])
+{
+    gsl_matrix *N = normal_matrix(m, d, share);
+    if (N == NULL) return CE_E_NOMEM;
+    for (size_t a = 0; a < CE_FREE; a++) {
+        shift[a] = 0.0;
+        for (size_t i = 0; i < d->cells; i++)
+            shift[a] += (share[i] - 1.0) * d->J[a * d->n + i] * d->r[i];
+    }
+    gsl_vector_view g = gsl_vector_view_array(shift, CE_FREE);
+    int status = gsl_linalg_cholesky_decomp1(N);
+    if (status == GSL_SUCCESS) status = gsl_linalg_cholesky_svx(N, &g.vector);
+    gsl_matrix_free(N);
+    return status == GSL_SUCCESS ? CE_OK : CE_E_NOFIT;
+}
+
+static int solve(problem *p, gsl_vector *shape, ce_design *design)
 {
     gsl_multifit_nlinear_parameters par = gsl_multifit_nlinear_default_parameters();
     par.solver = gsl_multifit_nlinear_solver_cholesky;
@@ -274,6 +308,9 @@ static int solve(problem *p, gsl_vector *shape)
         for (size_t i = 0; i < p->cells->n; i++) chi2 += gsl_vector_get(w->f, i) * gsl_vector_get(w->f, i);
         p->m->misfit = chi2 / (double)(p->cells->n > 10 ? p->cells->n - 10 : 1);
     }
+    memcpy(p->m->shape, shape->data, sizeof p->m->shape);
+    memcpy(p->m->linear, p->coef, sizeof p->m->linear);
+    if (status == GSL_SUCCESS && design != NULL) status = linearise(p, shape->data, w->f->data, design);
     gsl_multifit_nlinear_free(w);
     return status;
 }
@@ -300,7 +337,7 @@ ce_model ce_model_start(bool cooling, double centre_K, double width_K, double si
     return m;
 }
 
-ce_status ce_model_fit(const ce_cells *cells, double step, ce_model *model)
+ce_status ce_model_fit(const ce_cells *cells, double step, ce_model *model, ce_design *design)
 {
     const double sigma = model->sigma;
     const size_t n = cells->n, rows = n + CE_LINEAR;
@@ -324,31 +361,26 @@ ce_status ce_model_fit(const ce_cells *cells, double step, ce_model *model)
             p.y[i] = cells->y[i] * p.root[i];
         }
         memcpy(shape->data, model->shape, sizeof model->shape);
-        status = solve(&p, shape);
-        memcpy(model->shape, shape->data, sizeof model->shape);
-        memcpy(model->linear, p.coef, sizeof model->linear);
-        if (status == GSL_SUCCESS) status = covariance(&p, model->shape);
+        status = solve(&p, shape, design);
     }
     gsl_vector_free(shape);
     free(room);
     return status == GSL_SUCCESS ? CE_OK : status == GSL_ENOMEM ? CE_E_NOMEM : CE_E_NOFIT;
 }
 
-void ce_model_curve(const ce_model *m, size_t n, const double *low, const double *high, double *y)
+void ce_model_columns(const ce_model *m, size_t n, const double *low, const double *high,
+                      double *phi, double *tf, double *step)
 {
-    double *room = malloc(n * (2 + CE_LINEAR) * sizeof *room);
-    if (room == NULL) {
-        for (size_t i = 0; i < n; i++) y[i] = (double)NAN;
-        return;
-    }
-    double *phi = room + 2 * n;
-    columns(m, m->shape, NULL, n, low, high, room, room + n, phi);
+    columns(m, m->shape, NULL, n, low, high, tf, step, phi);
+}
+
+void ce_model_combine(const ce_model *m, size_t n, const double *phi, double *y)
+{
     for (size_t i = 0; i < n; i++) {
         y[i] = 0.0;
         for (size_t k = 0; k < CE_LINEAR; k++)
             if (k != L_HOOK) y[i] += m->linear[k] * phi[i * CE_LINEAR + k];
     }
-    free(room);
 }
 
 ce_lines ce_model_lines(const ce_model *m)
@@ -361,24 +393,19 @@ ce_lines ce_model_lines(const ce_model *m)
     };
 }
 
-double ce_model_fictive(const ce_model *m)
+double ce_model_lag(const ce_model *m)
 {
-    enum { CELLS = 260 };
-    double low[CELLS], high[CELLS], y[CELLS], area = 0.0;
-    for (int i = 0; i < CELLS; i++) {
-        low[i] = m->ref_K - 180.0 + i;
-        high[i] = low[i] + 1.0;
-    }
-    ce_model_curve(m, CELLS, low, high, y);
-    const ce_lines l = ce_model_lines(m);
-    for (int i = 0; i < CELLS; i++) area += y[i] - ce_line_at(&l.glass, low[i] + 0.5);
-    const double T2 = high[CELLS - 1], d0 = ce_line_at(&l.liquid, T2) - ce_line_at(&l.glass, T2);
-    const double d1 = l.liquid.slope - l.glass.slope, root = d0 * d0 - 2.0 * d1 * area;
-    return root < 0.0 ? (double)NAN : T2 - 2.0 * area / (d0 + sqrt(root));
+    return m->aged ? relax_of(m, m->shape).lag_K * (m->cooling ? -1.0 : 1.0) : 0.0;
 }
 
 void ce_model_move(ce_model *m, size_t parameter, double by)
 {
     if (parameter < CE_SHAPES) m->shape[parameter] += by;
     else m->linear[parameter - CE_SHAPES] += by;
+}
+
+double ce_model_increment(const ce_model *m, size_t parameter)
+{
+    if (parameter < CE_SHAPES) return active(m, parameter) ? 0.02 * fmin(prior_sd[parameter], 1.0) : 0.0;
+    return 1e-4 * fmax(fabs(m->linear[L_STEP]), 1e-300);
 }

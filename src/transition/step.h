@@ -66,19 +66,34 @@ ce_status ce_cells_make(const ce_curve *curve, double from_K, double to_K, doubl
                         double fine_K, ce_cells *cells);
 void ce_cells_free(ce_cells *cells);
 
+/* The fit linearised at its solution: rows are the cells and the priors of linear parameters. */
+typedef struct {
+    size_t n, cells;
+    double *J; /* owned; column by column: J[parameter * n + row], weighted                     */
+    double *r; /* residuals, weighted, of the rows                                              */
+} ce_design;
+void ce_design_free(ce_design *design);
+
 /* Fit from a start: ce_model_start() or an earlier fit; sigma and the kind of model are taken from
- * the model as it comes in. CE_OK | CE_E_NOFIT | CE_E_NOMEM. */
-ce_status ce_model_fit(const ce_cells *cells, double step, ce_model *model);
+ * the model as it comes in. design may be NULL. CE_OK | CE_E_NOFIT | CE_E_NOMEM. */
+ce_status ce_model_fit(const ce_cells *cells, double step, ce_model *model, ce_design *design);
+/* First-order change of all parameters when each cell's weight is multiplied by share[cell]. */
+ce_status ce_model_reweigh(const ce_model *model, const ce_design *design, const double *share,
+                           double shift[CE_FREE]);
 /* A first guess for a step of this half-step temperature and width; sigma > 0. */
 ce_model ce_model_start(bool cooling, double centre_K, double width_K, double sigma,
                         double hook_from_K);
-/* The model at n cells, with the lines it is built on. */
-void ce_model_curve(const ce_model *model, size_t n, const double *low, const double *high,
-                    double *y);
+/* The columns of the linear parameters at n cells, row by row, phi[n * CE_LINEAR], and the fictive
+ * temperatures tf[n]. Scratch: step[n]. */
+void ce_model_columns(const ce_model *model, size_t n, const double *low, const double *high,
+                      double *phi, double *tf, double *step);
+/* The curve they make, without the start-up. */
+void ce_model_combine(const ce_model *model, size_t n, const double *phi, double *y);
 ce_lines ce_model_lines(const ce_model *model);
-/* Fictive temperature by equal areas under the model, taken over all of its curve. */
-double ce_model_fictive(const ce_model *model);
-/* Move one of the CE_FREE parameters, shape first. */
+/* Shift of the equal-area temperature against the fictive one by the instrument's lag, K. */
+double ce_model_lag(const ce_model *model);
+/* Move one of the CE_FREE parameters, shape first; its step for differentiation. */
 void ce_model_move(ce_model *model, size_t parameter, double by);
+double ce_model_increment(const ce_model *model, size_t parameter);
 
 #endif
