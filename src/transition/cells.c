@@ -43,7 +43,7 @@ ce_status ce_cells_make(const ce_curve *curve, double from_K, double to_K, doubl
         cells->w[c] = sum_w;
         cells->low[c] = mean - half;
         cells->high[c] = mean + half;
-        if (c > 0 && cells->low[c] < cells->high[c - 1]) cells->low[c] = cells->high[c - 1];
+        if (c > 0 && cells->low[c] < cells->high[c - 1] + 1e-3) cells->low[c] = cells->high[c - 1];
     }
     return CE_OK;
 }

@@ -203,7 +203,7 @@ static void weigh_cells(const by_windows *s, ce_cells *cells)
         const double T = cells->T[i];
         const double off =
             T < s->glass.low_K ? cells->y[i] - ce_line_at(&s->g.line, T) : 0.0;
-        cells->sd[i] = hypot(inexact_steps * s->p.step, inexact_start * off);
+        cells->sd[i] = hypot((getenv("IX")?atof(getenv("IX")):inexact_steps) * s->p.step, inexact_start * off);
     }
 }
 
@@ -215,10 +215,11 @@ static ce_status fit_model(const by_windows *s, ce_window range, by_model *f)
     ce_model start = ce_model_start(c->cooling, centre, s->width,
                                     fmax(c->noise, 1e-9 * s->p.step),
                                     c->cooling ? c->T[c->n - 1] : c->T[0]);
-    start.fine_K = clamp(s->width / 30.0, 0.1, 0.25);
+    start.fine_K = clamp(s->width / 30.0, 0.1, 0.25) * (getenv("FK")?atof(getenv("FK")):1.0);
     ce_status st = ce_cells_make(c, range.low_K, range.high_K, centre, fine, &f->cells);
     if (st != CE_OK) return st;
     weigh_cells(s, &f->cells);
+    if (getenv("ST")) { double *q = start.shape; sscanf(getenv("ST"), "%lf,%lf,%lf,%lf,%lf", q, q+1,q+2,q+3,q+4); }
     f->model = start;
     st = ce_model_fit(&f->cells, s->p.step, &f->model, &f->design);
     if (c->cooling || st == CE_E_NOMEM) return st;

@@ -8,6 +8,7 @@
 #include <gsl/gsl_linalg.h>
 #include <gsl/gsl_multifit_nlinear.h>
 #include <math.h>
+#include <stdio.h>
 #include <stdlib.h>
 #include <string.h>
 
@@ -299,6 +300,24 @@ static int solve(problem *p, gsl_vector *shape, ce_design *design)
     int status = gsl_multifit_nlinear_init(shape, &fdf, w);
     if (status == GSL_SUCCESS)
         status = gsl_multifit_nlinear_driver(60, 1e-5, 1e-9, 1e-7, NULL, NULL, &why, w);
+    if (getenv("CE_SCAN")) {
+        gsl_vector *x = gsl_vector_alloc(CE_SHAPES), *ff = gsl_vector_alloc(rows);
+        gsl_vector *gg = gsl_vector_alloc(CE_SHAPES);
+        gsl_matrix *JJ = gsl_matrix_alloc(rows, CE_SHAPES);
+        residual(w->x, p, ff); jacobian(w->x, p, JJ); gsl_blas_dgemv(CblasTrans, 2.0, JJ, ff, 0.0, gg);
+        for (size_t j = 0; j < CE_SHAPES; j++) {
+            fprintf(stderr, "scan %zu grad %.3g:", j, gsl_vector_get(gg, j));
+            for (int t = -4; t <= 4; t++) {
+                gsl_vector_memcpy(x, w->x);
+                gsl_vector_set(x, j, gsl_vector_get(x, j) + t * 0.0025);
+                residual(x, p, ff);
+                fprintf(stderr, " %.4f", gsl_blas_dnrm2(ff) * gsl_blas_dnrm2(ff));
+            }
+            fprintf(stderr, "\n");
+        }
+        residual(w->x, p, ff); 
+    }
+    if (getenv("CE_DEBUG")) fprintf(stderr, "  solver status %d why %d it %zu fevals %zu jevals %zu chi2 %g\n", status, why, gsl_multifit_nlinear_niter(w), fdf.nevalf, fdf.nevaldf, gsl_blas_dnrm2(w->f)*gsl_blas_dnrm2(w->f));
     if (status == GSL_EMAXITER || status == GSL_ENOPROG) status = GSL_SUCCESS;
     gsl_vector_memcpy(shape, w->x);
     p->m->iterations = gsl_multifit_nlinear_niter(w);

@@ -31,7 +31,7 @@ void ce_relax_modes(double beta, ce_modes *modes)
     const double least = (1.0 - beta) * pow(beta, c), step = log(2.0) / chains;
     double z = 9.0 / least, s = pow(z, -1.0 / c), sum = 0.0;
     for (size_t j = 0; j < modes->chains; j++) modes->slowest[j] = s * exp2((double)j / chains);
-    for (modes->n = 0; modes->n < CE_MODES && sum < 1.0 - 1e-3; modes->n++)
+    for (modes->n = 0; modes->n < CE_MODES && sum < 1.0 - 1e-6; modes->n++)
         for (size_t j = 0; j < modes->chains; j++, z *= ratio)
             sum += modes->weight[j][modes->n] = step * density(a, c, z);
     modes->weight[modes->chains - 1][modes->n - 1] += 1.0 - sum;
@@ -80,7 +80,8 @@ static void advance(state *s, double dT, double dt)
     double lag = 0.0;
     for (size_t j = 0; j < r->modes.chains; j++)
         lag += decay(s->u[j], r->modes.weight[j], r->modes.n, r->modes.slowest[j] / th, dT, dt);
-    s->slope = dT != 0.0 ? 1.0 - (lag - s->lag) / dT : 0.0;
+    if (dT == 0.0) s->slope = 0.0;
+    else if (fabs(dT) > 1e-5) s->slope = 1.0 - (lag - s->lag) / dT; /* else rounding errors */
     s->T += dT;
     s->lag = lag;
 }
@@ -110,12 +111,27 @@ static double longest(const ce_relax *r, double T)
 static void ramp(state *s, double to, double per_K)
 {
     while (s->T != to) {
-        const double left = to - s->T, far = longest(s->relax, s->T) * (per_K < 0.0 ? 2.0 : 1.0);
+        const double left = to - s->T, far = longest(s->relax, s->T);
         const double parts = ceil(fabs(left) / far - 1e-9);
         const double dT = parts <= 1.0 ? left : left / parts;
         advance(s, dT, dT * per_K);
         observe(s, dT);
         if (parts <= 1.0) s->T = to;
+    }
+}
+
+/* Cooling to a temperature that may depend on the parameters: the steps end on a fixed lattice, so
+ * that only the length of the last one changes and the result is smooth. */
+static void cool(state *s, double to, double per_K)
+{
+    const double base = s->relax->fine_at_K;
+    while (s->T > to) {
+        const double far = 2.0 * longest(s->relax, s->T - 1e-6);
+        double next = base + far * (ceil((s->T - base) / far - 1e-6) - 1.0);
+        if (next < to + 1e-6) next = to;
+        const double dT = next - s->T;
+        advance(s, dT, dT * per_K);
+        s->T = next;
     }
 }
 
@@ -144,7 +160,7 @@ static void cross(state *s, double from, double to, double per_K, double *tf, do
 void ce_relax_scan(const ce_relax *r, bool cooling_scan, size_t n, const double *low,
                    const double *high, double *tf, double *step)
 {
-    state s = {.relax = r, .T = r->tr_K + 20.0, .slope = 1.0, .seen = 1.0};
+    state s = {.relax = r, .T = r->fine_at_K + 40.0, .slope = 1.0, .seen = 1.0};
     if (cooling_scan) {
         s.T = fmax(s.T, high[n - 1]);
         for (size_t i = n; i-- > 0;) cross(&s, high[i], low[i], -1.0, &tf[i], &step[i]);
@@ -152,10 +168,10 @@ void ce_relax_scan(const ce_relax *r, bool cooling_scan, size_t n, const double 
     }
     const double per_K = -1.0 / r->cooling;
     if (r->age_K > 0.0 && r->age_at_K > low[0] && r->age_at_K < s.T) {
-        ramp(&s, r->age_at_K, per_K);
+        cool(&s, r->age_at_K, per_K);
         anneal(&s);
     }
-    ramp(&s, fmin(low[0], s.T), per_K);
+    cool(&s, fmin(low[0], s.T), per_K);
     s.slope = s.seen = 0.0;
     for (size_t i = 0; i < n; i++) cross(&s, low[i], high[i], 1.0, &tf[i], &step[i]);
 }
