@@ -207,6 +207,32 @@ static void weigh_cells(const by_windows *s, ce_cells *cells)
     }
 }
 
+/* Mean share of the noise in what the cells may be off by: the misfit of a perfect model. */
+static double expected_misfit(const ce_cells *cells, double sigma)
+{
+    double sum = 0.0;
+    for (size_t i = 0; i < cells->n; i++) {
+        const double v = sigma * sigma / cells->w[i];
+        sum += v / (v + cells->sd[i] * cells->sd[i]);
+    }
+    return sum / (double)cells->n;
+}
+
+/* Fit from a start and keep the better; so_far is CE_OK when there is a fit already. */
+static ce_status try_model(by_model *f, double step, ce_model next, ce_status so_far)
+{
+    ce_design design = {0};
+    const ce_status st = ce_model_fit(&f->cells, step, &next, &design);
+    if (st == CE_OK && (so_far != CE_OK || next.misfit < 0.95 * f->model.misfit)) {
+        ce_design_free(&f->design);
+        f->design = design;
+        f->model = next;
+        return CE_OK;
+    }
+    ce_design_free(&design);
+    return st == CE_E_NOMEM ? st : so_far;
+}
+
 static ce_status fit_model(const by_windows *s, ce_window range, by_model *f)
 {
     const ce_curve *c = s->curve;
@@ -219,25 +245,23 @@ static ce_status fit_model(const by_windows *s, ce_window range, by_model *f)
     ce_status st = ce_cells_make(c, range.low_K, range.high_K, centre, fine, &f->cells);
     if (st != CE_OK) return st;
     weigh_cells(s, &f->cells);
-    if (getenv("ST")) { double *q = start.shape; sscanf(getenv("ST"), "%lf,%lf,%lf,%lf,%lf", q, q+1,q+2,q+3,q+4); }
-    f->model = start;
-    st = ce_model_fit(&f->cells, s->p.step, &f->model, &f->design);
-    if (c->cooling || st == CE_E_NOMEM) return st;
-    /* annealing and lag where the simple history does not do: from there, then from the start */
-    for (int k = 0; k < 2 && (st != CE_OK || f->model.misfit > (k == 0 ? 1.3 : 3.0)); k++) {
-        ce_model aged = k == 0 && st == CE_OK ? f->model : start;
-        ce_design design = {0};
-        aged.aged = true;
-        const ce_status then = ce_model_fit(&f->cells, s->p.step, &aged, &design);
-        if (then == CE_OK && (st != CE_OK || aged.misfit < 0.9 * f->model.misfit)) {
-            ce_design_free(&f->design);
-            f->design = design;
-            f->model = aged;
-            st = CE_OK;
-        } else {
-            ce_design_free(&design);
-            if (then == CE_E_NOMEM) return then;
-        }
+    const double good = 1.15 * expected_misfit(&f->cells, start.sigma) + 0.25;
+    /* one history after the other until one does: cooled at the rate of the scan, slower, faster;
+     * annealed or seen through a lag, from the best of these and afresh */
+    static const double cooled[] = {0.0, 2.0, -2.0};
+    st = CE_E_NOFIT;
+    for (size_t k = 0; k < sizeof cooled / sizeof *cooled; k++) {
+        ce_model next = start;
+        ce_model_cooled(&next, cooled[k]);
+        st = try_model(f, s->p.step, next, st);
+        if (st == CE_E_NOMEM || c->cooling || (st == CE_OK && f->model.misfit < good)) return st;
+    }
+    for (int k = 0; k < 3; k++) {
+        ce_model next = k == 0 && st == CE_OK ? f->model : start;
+        if (k == 2) ce_model_cooled(&next, 1.5);
+        next.aged = true;
+        st = try_model(f, s->p.step, next, st);
+        if (st == CE_E_NOMEM || (st == CE_OK && f->model.misfit < good)) return st;
     }
     return st;
 }

@@ -8,7 +8,6 @@
 #include <gsl/gsl_linalg.h>
 #include <gsl/gsl_multifit_nlinear.h>
 #include <math.h>
-#include <stdio.h>
 #include <stdlib.h>
 #include <string.h>
 
@@ -285,53 +284,59 @@ ce_status ce_model_reweigh(const ce_model *m, const ce_design *d, const double *
     return status == GSL_SUCCESS ? CE_OK : CE_E_NOFIT;
 }
 
+/* Iterate until two steps in a row improve chi-square by less than a hundredth of what one standard
+ * deviation of a parameter is worth; valleys of nearly equivalent histories are not walked to the
+ * end. */
+static int descend(gsl_multifit_nlinear_workspace *w, size_t points)
+{
+    enum { MOST = 60 };
+    double chi2 = gsl_blas_dnrm2(w->f);
+    int slow = 0;
+    chi2 *= chi2;
+    for (int i = 0; i < MOST && slow < 2; i++) {
+        const int status = gsl_multifit_nlinear_iterate(w);
+        if (status == GSL_ENOPROG) break; /* no step helps: as good as it gets                 */
+        if (status != GSL_SUCCESS) return status;
+        double now = gsl_blas_dnrm2(w->f);
+        now *= now;
+        slow = chi2 - now < 0.01 * fmax(1.0, now / (double)points) ? slow + 1 : 0;
+        chi2 = now;
+    }
+    return isfinite(chi2) ? GSL_SUCCESS : GSL_EDOM;
+}
+
 static int solve(problem *p, gsl_vector *shape, ce_design *design)
 {
     gsl_multifit_nlinear_parameters par = gsl_multifit_nlinear_default_parameters();
     par.solver = gsl_multifit_nlinear_solver_cholesky;
     par.trs = gsl_multifit_nlinear_trs_lm;
-    const size_t rows = p->rows + CE_SHAPES;
+    const size_t rows = p->rows + CE_SHAPES, n = p->cells->n;
     gsl_multifit_nlinear_workspace *w =
         gsl_multifit_nlinear_alloc(gsl_multifit_nlinear_trust, &par, rows, CE_SHAPES);
     if (w == NULL) return GSL_ENOMEM;
     gsl_multifit_nlinear_fdf fdf = {
         .f = residual, .df = jacobian, .n = rows, .p = CE_SHAPES, .params = p};
-    int why = 0;
     int status = gsl_multifit_nlinear_init(shape, &fdf, w);
-    if (status == GSL_SUCCESS)
-        status = gsl_multifit_nlinear_driver(60, 1e-5, 1e-9, 1e-7, NULL, NULL, &why, w);
-    if (getenv("CE_SCAN")) {
-        gsl_vector *x = gsl_vector_alloc(CE_SHAPES), *ff = gsl_vector_alloc(rows);
-        gsl_vector *gg = gsl_vector_alloc(CE_SHAPES);
-        gsl_matrix *JJ = gsl_matrix_alloc(rows, CE_SHAPES);
-        residual(w->x, p, ff); jacobian(w->x, p, JJ); gsl_blas_dgemv(CblasTrans, 2.0, JJ, ff, 0.0, gg);
-        for (size_t j = 0; j < CE_SHAPES; j++) {
-            fprintf(stderr, "scan %zu grad %.3g:", j, gsl_vector_get(gg, j));
-            for (int t = -4; t <= 4; t++) {
-                gsl_vector_memcpy(x, w->x);
-                gsl_vector_set(x, j, gsl_vector_get(x, j) + t * 0.0025);
-                residual(x, p, ff);
-                fprintf(stderr, " %.4f", gsl_blas_dnrm2(ff) * gsl_blas_dnrm2(ff));
-            }
-            fprintf(stderr, "\n");
-        }
-        residual(w->x, p, ff); 
-    }
-    if (getenv("CE_DEBUG")) fprintf(stderr, "  solver status %d why %d it %zu fevals %zu jevals %zu chi2 %g\n", status, why, gsl_multifit_nlinear_niter(w), fdf.nevalf, fdf.nevaldf, gsl_blas_dnrm2(w->f)*gsl_blas_dnrm2(w->f));
-    if (status == GSL_EMAXITER || status == GSL_ENOPROG) status = GSL_SUCCESS;
+    if (status == GSL_SUCCESS) status = descend(w, n);
     gsl_vector_memcpy(shape, w->x);
     p->m->iterations = gsl_multifit_nlinear_niter(w);
     if (status == GSL_SUCCESS) { /* leave everything at the solution */
         status = residual(shape, p, w->f);
         double chi2 = 0.0;
-        for (size_t i = 0; i < p->cells->n; i++) chi2 += gsl_vector_get(w->f, i) * gsl_vector_get(w->f, i);
-        p->m->misfit = chi2 / (double)(p->cells->n > 10 ? p->cells->n - 10 : 1);
+        for (size_t i = 0; i < n; i++) chi2 += gsl_vector_get(w->f, i) * gsl_vector_get(w->f, i);
+        p->m->misfit = chi2 / (double)(n > 20 ? n - 10 : n);
     }
     memcpy(p->m->shape, shape->data, sizeof p->m->shape);
     memcpy(p->m->linear, p->coef, sizeof p->m->linear);
-    if (status == GSL_SUCCESS && design != NULL) status = linearise(p, shape->data, w->f->data, design);
+    if (status == GSL_SUCCESS && design != NULL)
+        status = linearise(p, shape->data, w->f->data, design);
     gsl_multifit_nlinear_free(w);
     return status;
+}
+
+void ce_model_cooled(ce_model *m, double log_ratio)
+{
+    m->shape[S_COOLING] = log_ratio;
 }
 
 ce_model ce_model_start(bool cooling, double centre_K, double width_K, double sigma,

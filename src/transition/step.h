@@ -83,6 +83,8 @@ ce_status ce_model_reweigh(const ce_model *model, const ce_design *design, const
 /* A first guess for a step of this half-step temperature and width; sigma > 0. */
 ce_model ce_model_start(bool cooling, double centre_K, double width_K, double sigma,
                         double hook_from_K);
+/* Start from another ratio of the cooling before to the scan, ln. */
+void ce_model_cooled(ce_model *model, double log_ratio);
 /* The columns of the linear parameters at n cells, row by row, phi[n * CE_LINEAR], and the fictive
  * temperatures tf[n]. Scratch: step[n]. */
 void ce_model_columns(const ce_model *model, size_t n, const double *low, const double *high,
