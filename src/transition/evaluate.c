@@ -10,7 +10,7 @@
 
 enum { TRACE = 600 };
 static const double inexact_start = 0.02; /* and of a start-up, relative */
-static const double inexact_steps = 3e-4; /* what the model may miss of a step, any cell        */
+static const double inexact_steps = 6e-4; /* what the model may miss of a step, any cell        */
 
 /* Room for one trace. */
 typedef struct {
@@ -241,7 +241,7 @@ static ce_status fit_model(const by_windows *s, ce_window range, by_model *f)
     ce_model start = ce_model_start(c->cooling, centre, s->width,
                                     fmax(c->noise, 1e-9 * s->p.step),
                                     c->cooling ? c->T[c->n - 1] : c->T[0]);
-    start.fine_K = clamp(s->width / 30.0, 0.1, 0.25) * (getenv("FK")?atof(getenv("FK")):1.0);
+    start.fine_K = clamp(s->width / 16.0, 0.15, 0.5);
     ce_status st = ce_cells_make(c, range.low_K, range.high_K, centre, fine, &f->cells);
     if (st != CE_OK) return st;
     weigh_cells(s, &f->cells);

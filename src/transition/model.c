@@ -22,7 +22,7 @@ static const double prior_sd[CE_SHAPES] = {
     [S_COOLING] = 0.8,  /* ln of the rate ratio, around equal rates                             */
     [S_AGE] = 3.0,      /* ln of annealing time times rate in K, around 3 K                     */
     [S_AGE_AT] = 6.0,   /* K below Tr, around 16 K                                              */
-    [S_LAG] = 1.0,      /* ln of the instrument's lag in K, around 0.4 K                        */
+    [S_LAG] = 1.5,      /* ln of the instrument's lag in K, around 0.2 K                        */
     [S_HOOK] = 1.0,     /* ln of the decay of the start-up in K, around 3 K                     */
 };
 enum { L_GLASS, L_GLASS_SLOPE, L_STEP, L_STEP_SLOPE, L_HOOK, L_CURVE };
@@ -37,7 +37,6 @@ static bool active(const ce_model *m, size_t j)
 {
     if (j == S_COOLING) return !m->cooling;
     if (j == S_AGE || j == S_AGE_AT) return m->aged && !m->cooling;
-    if (j == S_LAG) return m->aged;
     return true;
 }
 
@@ -48,7 +47,7 @@ static ce_relax relax_of(const ce_model *m, const double *shape)
                   .fine_K = m->fine_K,
                   .cooling = exp(fmin(fmax(shape[S_COOLING], -7.0), 7.0)),
                   .age_K = m->aged ? exp(fmin(shape[S_AGE], 14.0)) : 0.0,
-                  .lag_K = m->aged ? exp(fmin(shape[S_LAG], 2.0)) : 0.0,
+                  .lag_K = exp(fmin(shape[S_LAG], 2.0)),
                   .age_at_K = shape[S_TR] - fmax(shape[S_AGE_AT], 1.0)};
     const double unit = exp(fmin(fmax(shape[S_UNIT], -2.5), 3.0)), least = -4.0;
     const double odds = fmax(shape[S_X] + log(unit), least);
@@ -65,6 +64,16 @@ static double hook_mean(double a, double b)
     return mid < -40.0 ? 0.0 : exp(mid) * (half < 1e-4 ? 1.0 : sinh(half) / half);
 }
 
+static double hook_rate(const ce_model *m, const double *shape)
+{
+    return exp(-fmin(fmax(shape[S_HOOK], -1.5), 3.5)) * (m->cooling ? 1.0 : -1.0);
+}
+
+static double hook_at(const ce_model *m, double rate, double low, double high)
+{
+    return hook_mean(rate * (low - m->hook_from_K), rate * (high - m->hook_from_K));
+}
+
 /* The columns of the linear parameters at n cells, row by row with stride CE_LINEAR. */
 static void columns(const ce_model *m, const double *shape, const ce_modes *modes, size_t n,
                     const double *low, const double *high, double *tf, double *step, double *out)
@@ -73,7 +82,7 @@ static void columns(const ce_model *m, const double *shape, const ce_modes *mode
     if (modes != NULL) r.modes = *modes;
     else ce_relax_modes(r.beta, &r.modes);
     ce_relax_scan(&r, m->cooling, n, low, high, tf, step);
-    const double hook = exp(-fmin(fmax(shape[S_HOOK], -1.5), 3.5)) * (m->cooling ? 1.0 : -1.0);
+    const double hook = hook_rate(m, shape);
     for (size_t i = 0; i < n; i++) {
         const double T = 0.5 * (low[i] + high[i]), t = (T - m->ref_K) / lever_K;
         double *row = out + i * CE_LINEAR;
@@ -81,7 +90,7 @@ static void columns(const ce_model *m, const double *shape, const ce_modes *mode
         row[L_GLASS_SLOPE] = t;
         row[L_STEP] = step[i];
         row[L_STEP_SLOPE] = step[i] * (tf[i] - m->ref_K) / lever_K;
-        row[L_HOOK] = hook_mean(hook * (low[i] - m->hook_from_K), hook * (high[i] - m->hook_from_K));
+        row[L_HOOK] = hook_at(m, hook, low[i], high[i]);
         row[L_CURVE] = m->curved && t < 0.0 ? t * t : 0.0;
     }
 }
@@ -175,6 +184,15 @@ static void slope_by(problem *p, const double *shape, size_t j, double *out)
     memcpy(moved, shape, sizeof moved);
     const double h = j == S_TR || j == S_AGE_AT ? 0.02 : 0.01;
     moved[j] += h;
+    if (j == S_HOOK) { /* the scan does not depend on it                                       */
+        const double was = hook_rate(p->m, shape), now = hook_rate(p->m, moved);
+        memset(out, 0, p->rows * sizeof *out);
+        for (size_t i = 0; i < c->n; i++)
+            out[i] = (hook_at(p->m, now, c->low[i], c->high[i]) -
+                      hook_at(p->m, was, c->low[i], c->high[i])) *
+                     p->root[i] * p->coef[L_HOOK] / h;
+        return;
+    }
     columns(p->m, moved, NULL, c->n, c->low, c->high, p->tf, p->step, p->alt);
     weigh(p, p->alt);
     for (size_t i = 0; i < p->rows; i++) {
@@ -289,7 +307,7 @@ ce_status ce_model_reweigh(const ce_model *m, const ce_design *d, const double *
  * end. */
 static int descend(gsl_multifit_nlinear_workspace *w, size_t points)
 {
-    enum { MOST = 60 };
+    enum { MOST = 40 };
     double chi2 = gsl_blas_dnrm2(w->f);
     int slow = 0;
     chi2 *= chi2;
@@ -345,7 +363,7 @@ ce_model ce_model_start(bool cooling, double centre_K, double width_K, double si
     const double mean[CE_SHAPES] = {[S_TR] = centre_K + 2.0, [S_UNIT] = log(1.2),
                                     [S_X] = log(0.3),        [S_BETA] = 1.0,
                                     [S_COOLING] = 0.0,       [S_AGE] = log(30.0),
-                                    [S_AGE_AT] = 16.0,       [S_LAG] = log(0.4),
+                                    [S_AGE_AT] = 16.0,       [S_LAG] = log(0.2),
                                     [S_HOOK] = log(3.0)};
     ce_model m = {.cooling = cooling,
                   .ref_K = centre_K,
@@ -419,7 +437,7 @@ ce_lines ce_model_lines(const ce_model *m)
 
 double ce_model_lag(const ce_model *m)
 {
-    return m->aged ? relax_of(m, m->shape).lag_K * (m->cooling ? -1.0 : 1.0) : 0.0;
+    return relax_of(m, m->shape).lag_K * (m->cooling ? -1.0 : 1.0);
 }
 
 void ce_model_move(ce_model *m, size_t parameter, double by)
