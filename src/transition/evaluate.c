@@ -10,7 +10,7 @@
 
 enum { TRACE = 600 };
 static const double inexact_start = 0.02; /* and of a start-up, relative */
-static const double inexact_steps = 6e-4; /* what the model may miss of a step, any cell        */
+static const double inexact_steps = 1e-3; /* what the model may miss of a step, any cell        */
 
 /* Room for one trace. */
 typedef struct {
@@ -109,7 +109,10 @@ static ce_status settle_windows(by_windows *s, const ce_place *place,
     for (int pass = 0; pass < 4; pass++) {
         if (!ce_fit_line(s->curve, s->glass, &s->g) || !ce_fit_line(s->curve, s->liquid, &s->l))
             return ce_fail(err, CE_E_REFUSED, "too little curve beside the step for two baselines");
-        if (!construct_on(s))
+        const bool ok = construct_on(s);
+        if (getenv("CE_DEBUG")) fprintf(stderr, " pass %d glass %.1f..%.1f liquid %.1f..%.1f width %.1f half %.2f low %.1f high %.1f smooth %.2f ok %d step %g\n", pass, s->glass.low_K, s->glass.high_K, s->liquid.low_K, s->liquid.high_K, s->width, s->p.at[CE_HALF_STEP], s->p.low_K, s->p.high_K, s->smooth_K, ok, s->p.step);
+        if (!ok && getenv("CE_DEBUG")) for (size_t i=0;i<s->t->trace.n;i+=20) fprintf(stderr, "   %.2f y %g g %g l %g\n", s->t->T[i], s->t->y[i], ce_line_at(&s->lines.glass, s->t->T[i]), ce_line_at(&s->lines.liquid, s->t->T[i]));
+        if (!ok)
             return ce_fail(err, CE_E_REFUSED, "the curve does not cross between its baselines");
         if (pass == 3) break;
         const double off = clamp(1.0 * s->width, 2.0, 20.0);
@@ -203,7 +206,7 @@ static void weigh_cells(const by_windows *s, ce_cells *cells)
         const double T = cells->T[i];
         const double off =
             T < s->glass.low_K ? cells->y[i] - ce_line_at(&s->g.line, T) : 0.0;
-        cells->sd[i] = hypot((getenv("IX")?atof(getenv("IX")):inexact_steps) * s->p.step, inexact_start * off);
+        cells->sd[i] = hypot(inexact_steps * s->p.step, inexact_start * off);
     }
 }
 
@@ -223,7 +226,7 @@ static ce_status try_model(by_model *f, double step, ce_model next, ce_status so
 {
     ce_design design = {0};
     const ce_status st = ce_model_fit(&f->cells, step, &next, &design);
-    if (st == CE_OK && (so_far != CE_OK || next.misfit < 0.95 * f->model.misfit)) {
+    if (st == CE_OK && (so_far != CE_OK || next.total < 0.9 * f->model.total)) {
         ce_design_free(&f->design);
         f->design = design;
         f->model = next;
@@ -245,7 +248,7 @@ static ce_status fit_model(const by_windows *s, ce_window range, by_model *f)
     ce_status st = ce_cells_make(c, range.low_K, range.high_K, centre, fine, &f->cells);
     if (st != CE_OK) return st;
     weigh_cells(s, &f->cells);
-    const double good = 1.15 * expected_misfit(&f->cells, start.sigma) + 0.25;
+    const double good = 1.15 * expected_misfit(&f->cells, start.sigma) + 0.9;
     /* one history after the other until one does: cooled at the rate of the scan, slower, faster;
      * annealed or seen through a lag, from the best of these and afresh */
     static const double cooled[] = {0.0, 2.0, -2.0};

@@ -342,6 +342,7 @@ static int solve(problem *p, gsl_vector *shape, ce_design *design)
         status = residual(shape, p, w->f);
         double chi2 = 0.0;
         for (size_t i = 0; i < n; i++) chi2 += gsl_vector_get(w->f, i) * gsl_vector_get(w->f, i);
+        p->m->total = gsl_blas_dnrm2(w->f) * gsl_blas_dnrm2(w->f);
         p->m->misfit = chi2 / (double)(n > 20 ? n - 10 : n);
     }
     memcpy(p->m->shape, shape->data, sizeof p->m->shape);

@@ -48,6 +48,7 @@ typedef struct {
     double linear[CE_LINEAR];
     double centre[CE_SHAPES];  /* of the prior                                                  */
     double sigma;              /* sd of a recorded point, for the weights                       */
+    double total;              /* chi-square with that of the priors                            */
     double misfit;             /* reduced chi-square against sigma                              */
     double cov[CE_FREE][CE_FREE]; /* of shape and linear parameters at sigma                    */
     size_t iterations;
