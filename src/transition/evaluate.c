@@ -83,17 +83,17 @@ static bool fit_windows(by_windows *s)
 /* Windows beside the step: they begin off its tails, are at least 10 K long, and as long as 30 K where
  * the curve stays straight (no start-up, no other event). */
 static void place_windows(by_windows *s, const ce_transition_options *o, double low, double high,
-                          double off, double step)
+                          double step)
 {
     const ce_curve *c = s->curve;
     const double first = fmax(c->T[0] + 3.0, s->edge.low_K);
-    const double last = fmin(c->T[c->n - 1], s->edge.high_K);
+    const double last = fmin(c->T[c->n - 1] - 1.5, s->edge.high_K);
     const double tolerance = fmax(0.03 * step, 2.0 * c->noise / sqrt(fmax(2.0 / c->spacing, 1.0)));
-    s->glass.high_K = fmax(low - off, first + 6.0);
+    s->glass.high_K = fmax(low, first + 6.0);
     s->glass.low_K = fmax(s->glass.high_K - 10.0, first);
     s->glass.low_K = ce_reach(c, s->glass.high_K, s->glass.low_K,
                               fmax(s->glass.high_K - 30.0, first), tolerance);
-    s->liquid.low_K = fmin(high + off, last - 5.0);
+    s->liquid.low_K = fmin(high, last - 6.0);
     s->liquid.high_K = fmin(s->liquid.low_K + 10.0, last);
     s->liquid.high_K = ce_reach(c, s->liquid.low_K, s->liquid.high_K,
                                 fmin(s->liquid.low_K + 30.0, last), tolerance);
@@ -101,23 +101,29 @@ static void place_windows(by_windows *s, const ce_transition_options *o, double 
     if (!isnan(o->liquid.low_K)) s->liquid = o->liquid;
 }
 
+/* Windows from the place, moved off the tails of the step as it is seen between them; not farther
+ * than where the place was found straight, and not when the step falls apart over it. */
 static ce_status settle_windows(by_windows *s, const ce_place *place,
                                 const ce_transition_options *o, ce_error *err)
 {
-    s->width = fmax(0.5 * (place->high_K - place->low_K), 1.0);
-    place_windows(s, o, place->low_K, place->high_K, 0.0, place->step);
-    for (int pass = 0; pass < 4; pass++) {
-        if (!ce_fit_line(s->curve, s->glass, &s->g) || !ce_fit_line(s->curve, s->liquid, &s->l))
-            return ce_fail(err, CE_E_REFUSED, "too little curve beside the step for two baselines");
-        const bool ok = construct_on(s);
-        if (getenv("CE_DEBUG")) fprintf(stderr, " pass %d glass %.1f..%.1f liquid %.1f..%.1f width %.1f half %.2f low %.1f high %.1f smooth %.2f ok %d step %g\n", pass, s->glass.low_K, s->glass.high_K, s->liquid.low_K, s->liquid.high_K, s->width, s->p.at[CE_HALF_STEP], s->p.low_K, s->p.high_K, s->smooth_K, ok, s->p.step);
-        if (!ok && getenv("CE_DEBUG")) for (size_t i=0;i<s->t->trace.n;i+=20) fprintf(stderr, "   %.2f y %g g %g l %g\n", s->t->T[i], s->t->y[i], ce_line_at(&s->lines.glass, s->t->T[i]), ce_line_at(&s->lines.liquid, s->t->T[i]));
-        if (!ok)
-            return ce_fail(err, CE_E_REFUSED, "the curve does not cross between its baselines");
-        if (pass == 3) break;
-        const double off = clamp(1.0 * s->width, 2.0, 20.0);
-        place_windows(s, o, s->p.low_K, fmax(s->p.high_K, s->p.at[CE_END]) + 0.5 * s->width, off,
-                      s->p.step);
+    const double gap = place->high_K - place->low_K, slack = fmax(0.6 * gap, 8.0);
+    s->width = fmax(0.5 * gap, 1.0);
+    place_windows(s, o, place->low_K, place->high_K, place->step);
+    if (!ce_fit_line(s->curve, s->glass, &s->g) || !ce_fit_line(s->curve, s->liquid, &s->l))
+        return ce_fail(err, CE_E_REFUSED, "too little curve beside the step for two baselines");
+    if (!construct_on(s))
+        return ce_fail(err, CE_E_REFUSED, "the curve does not cross between its baselines");
+    for (int pass = 0; pass < 3; pass++) {
+        const by_windows before = *s;
+        const double off = clamp(s->width, 2.0, 20.0);
+        const double low = clamp(s->p.low_K - off, place->low_K - slack, place->low_K + 0.4 * gap);
+        const double high = clamp(fmax(s->p.high_K, s->p.at[CE_END]) + 0.5 * s->width + off,
+                                  place->high_K - 0.4 * gap, place->high_K + slack);
+        place_windows(s, o, low, high, s->p.step);
+        if (fit_windows(s) && s->p.step > 0.6 * before.p.step && s->p.step < 1.7 * before.p.step)
+            continue;
+        *s = before;
+        return CE_OK;
     }
     return CE_OK;
 }
@@ -375,7 +381,7 @@ ce_status ce_read_step(const ce_curve *curve, const ce_place *place, ce_window e
         const double tolerance = fmax(0.08 * s.p.step, 4.0 * curve->noise);
         out->range.low_K = fmax(edge.low_K, curve->T[0] + 1.0);
         out->range.high_K = ce_reach(curve, s.liquid.low_K, s.liquid.high_K,
-                                     fmin(edge.high_K, curve->T[curve->n - 1]), tolerance);
+                                     fmin(edge.high_K, curve->T[curve->n - 1] - 1.5), tolerance);
         out->glass = s.glass;
         out->liquid = s.liquid;
         out->lines = s.lines;
