@@ -5,10 +5,11 @@
 
 #include <math.h>
 #include <stdlib.h>
-#include <stdio.h>
 #include <string.h>
 
 enum { TRACE = 600 };
+static const double most_rough = 0.03;       /* what a model may leave over of a step           */
+static const double least_baseline_K = 10.0; /* beside the step, else the run cuts it off       */
 static const double inexact_start = 0.02; /* and of a start-up, relative */
 static const double inexact_steps = 1e-3; /* what the model may miss of a step, any cell        */
 
@@ -315,14 +316,6 @@ static ce_status window_part(const by_model *f, double sum[CE_CONSTRUCTIONS + 2]
     return st;
 }
 
-/* What the curve says beyond the model, smoothed, as far as it stands out of the noise. */
-static void correct(const by_windows *s, const by_model *f, modelling *m)
-{
-    (void)s;
-    (void)f;
-    (void)m;
-}
-
 static ce_status model_uncertainty(const by_windows *s, by_model *f, modelling *m,
                                    const ce_transition_options *o, ce_finding *out)
 {
@@ -339,34 +332,143 @@ static ce_status model_uncertainty(const by_windows *s, by_model *f, modelling *
     return CE_OK;
 }
 
-/* The model's lines and constructions, where it follows the curve. */
+/* What the model leaves over around the step beyond the noise, r.m.s. in steps. */
+static double roughness(const by_windows *s, const by_model *f)
+{
+    const double low = s->p.at[CE_HALF_STEP] - 2.0 * s->width - 5.0;
+    const double high = s->p.at[CE_HALF_STEP] + 2.0 * s->width + 5.0;
+    double sum = 0.0;
+    size_t n = 0;
+    for (size_t i = 0; i < f->cells.n; i++) {
+        if (f->cells.T[i] < low || f->cells.T[i] > high) continue;
+        const double noise = f->model.sigma * f->model.sigma / f->cells.w[i];
+        const double r = f->design.r[i] * hypot(sqrt(noise), f->cells.sd[i]);
+        sum += r * r - noise;
+        n++;
+    }
+    return n > 0 ? sqrt(fmax(sum / (double)n, 0.0)) / f->p.step : HUGE_VAL;
+}
+
+/* Where the windows alone speak against the model. */
+static bool follows(const by_windows *s, const by_model *f, double rough)
+{
+    const double apart = fabs(f->p.at[CE_HALF_STEP] - s->p.at[CE_HALF_STEP]);
+    return rough < most_rough && apart < fmax(0.5 * s->width, 2.0) &&
+           f->p.step > 0.5 * s->p.step && f->p.step < 2.0 * s->p.step;
+}
+
+/* The model's lines and constructions, where it follows the curve; CE_E_NOFIT where it does not. */
 static ce_status take_model(const by_windows *s, const ce_transition_options *o, ce_finding *out)
 {
     by_model f = {0};
     modelling *m = malloc(sizeof *m);
     ce_status st = m == NULL ? CE_E_NOMEM : fit_model(s, out->range, &f);
     if (st == CE_OK) {
-        if (getenv("CE_DEBUG"))
-            fprintf(stderr, "%d age %.2f at %.2f lag %.2f cells %zu it %zu misfit %.3g range %.1f..%.1f w %.2f noise/step %.2g | TR %.2f unit %.2f x %.2f beta %.2f cool %.2f hook %.2f\n", f.model.aged, f.model.shape[5],f.model.shape[6],f.model.shape[7],f.cells.n,
-                        f.model.iterations, f.model.misfit, out->range.low_K, out->range.high_K,
-                        s->width, s->curve->noise / s->p.step, f.model.shape[0], f.model.shape[1],
-                        f.model.shape[2], f.model.shape[3], f.model.shape[4], f.model.shape[8]);
         model_cells(m, s->p.at[CE_HALF_STEP], s->width);
         model_columns(&f.model, m);
-        if (construct_model(&f.model, m, &f.lines, &f.p)) {
-            correct(s, &f, m);
-            st = model_uncertainty(s, &f, m, o, out);
-        } else st = CE_E_NOFIT;
+        if (!construct_model(&f.model, m, &f.lines, &f.p)) st = CE_E_NOFIT;
     }
     if (st == CE_OK) {
-        out->points = f.p;
-        out->lines = f.lines;
-        out->model = true;
+        const double rough = roughness(s, &f);
+        if (!follows(s, &f, rough)) st = CE_E_NOFIT;
+        else st = model_uncertainty(s, &f, m, o, out);
+        if (st == CE_OK) {
+            out->points = f.p;
+            out->lines = f.lines;
+            out->rough = rough;
+            out->hook = fabs(ce_model_hook(&f.model, s->glass.low_K)) / f.p.step;
+            out->model = true;
+        }
     }
     ce_cells_free(&f.cells);
     ce_design_free(&f.design);
     free(m);
     return st;
+}
+
+/* ---- windows alone ------------------------------------------------------------------------ */
+
+/* Variance of each construction from noise: of the two lines, and of the curve between them. */
+static void window_noise(const by_windows *s, ce_finding *out)
+{
+    const ce_curve *c = s->curve;
+    const double T = s->p.at[CE_HALF_STEP], slope = fmax(s->p.tangent.slope - s->g.line.slope, 1e-300);
+    const double dg = T - s->g.line.ref_K, dl = T - s->l.line.ref_K;
+    const double vg = s->g.var_at + dg * dg * s->g.var_slope;
+    const double vl = s->l.var_at + dl * dl * s->l.var_slope;
+    const double points = fmax(c->w[c->n / 2] * 2.0 * s->smooth_K / fmax(c->spacing, 1e-9), 2.0);
+    const double local = 3.0 * c->noise * c->noise / points, least = 0.02 * c->spacing + 1e-3;
+    const double weight[CE_CONSTRUCTIONS][2] = {
+        [CE_ONSET] = {1.0, 0.0},      [CE_MIDPOINT] = {0.25, 0.25}, [CE_HALF_STEP] = {0.25, 0.25},
+        [CE_INFLECTION] = {0.0, 0.0}, [CE_END] = {0.0, 1.0},        [CE_FICTIVE] = {0.0, 0.0}};
+    for (int k = 0; k < CE_CONSTRUCTIONS; k++)
+        out->u_noise[k] =
+            hypot(sqrt(weight[k][0] * vg + weight[k][1] * vl + local) / slope, least);
+    /* the steepest place wanders over a good part of the step where noise bends it */
+    out->u_noise[CE_INFLECTION] =
+        hypot(least + 0.25 * s->smooth_K, sqrt(local) / s->p.step * s->width);
+    /* an area lives on the glassy line over the whole step */
+    out->u_noise[CE_FICTIVE] = hypot(least, sqrt(vg) * 2.0 * s->width / s->p.step);
+    out->step_u = sqrt(vg + vl);
+}
+
+/* What other windows as good as these would say, r.m.s. */
+static void window_ensemble(const by_windows *s, ce_finding *out)
+{
+    enum { TRIALS = 6 };
+    double sum[CE_CONSTRUCTIONS] = {0}, step = 0.0, used = 0.0;
+    for (int k = 0; k < TRIALS; k++) {
+        by_windows trial = *s;
+        const double g = s->glass.high_K - s->glass.low_K, l = s->liquid.high_K - s->liquid.low_K;
+        if (k == 0) trial.glass.low_K += 0.35 * g;
+        if (k == 1) trial.glass.high_K -= 0.35 * g;
+        if (k == 2) trial.liquid.low_K += 0.35 * l;
+        if (k == 3) trial.liquid.high_K -= 0.35 * l;
+        if (k == 4) trial.glass.high_K += fmin(0.3 * s->width, 0.2 * g);
+        if (k == 5) trial.liquid.low_K -= fmin(0.3 * s->width, 0.2 * l);
+        if (!fit_windows(&trial)) continue;
+        for (int i = 0; i < CE_CONSTRUCTIONS; i++) {
+            const double d = trial.p.at[i] - s->p.at[i];
+            if (isfinite(d)) sum[i] += d * d;
+        }
+        step += (trial.p.step - s->p.step) * (trial.p.step - s->p.step);
+        used += 1.0;
+    }
+    for (int i = 0; i < CE_CONSTRUCTIONS; i++)
+        out->u_window[i] = used > 0.0 ? sqrt(2.0 * sum[i] / used) : 0.0;
+    out->step_u = hypot(out->step_u, used > 0.0 ? sqrt(2.0 * step / used) : 0.0);
+}
+
+static void take_windows(const by_windows *s, const ce_transition_options *o, ce_finding *out)
+{
+    const double sag = fmax(fabs(s->g.bend) - 2.0 * s->g.bend_u, fabs(s->l.bend) - 2.0 * s->l.bend_u);
+    const double rest = sqrt(fmax(s->g.sd * s->g.sd + s->l.sd * s->l.sd -
+                                      2.0 * s->curve->noise * s->curve->noise, 0.0));
+    out->points = s->p;
+    out->lines = s->lines;
+    out->model = false;
+    out->bend = fmax(sag, 0.0) / s->p.step;
+    out->rough = rest / s->p.step;
+    window_noise(s, out);
+    if (o->ensemble) window_ensemble(s, out);
+    out->width_u = hypot(hypot(out->u_noise[CE_ONSET], out->u_window[CE_ONSET]),
+                         hypot(out->u_noise[CE_END], out->u_window[CE_END]));
+}
+
+/* What lies around the step: points in it, baseline that is missing, the next event. */
+static void survey(const by_windows *s, ce_finding *out)
+{
+    const ce_curve *c = s->curve;
+    double on = out->points.at[CE_ONSET], end = out->points.at[CE_END];
+    if (!isfinite(on)) on = out->points.low_K;
+    if (!isfinite(end)) end = out->points.high_K;
+    const double first = c->T[0], last = c->T[c->n - 1];
+    const size_t b = ce_curve_index(c, fmax(end, out->points.high_K));
+    for (size_t i = ce_curve_index(c, fmin(on, out->points.low_K)); i < b; i++)
+        out->points_within += c->w[i];
+    out->missing_K = fmax(fmax(least_baseline_K - (last - end), least_baseline_K - (on - first)), 0.0);
+    out->event_K = out->range.high_K < fmin(last, s->edge.high_K) - 4.0 ? out->range.high_K - end
+                                                                        : (double)NAN;
 }
 
 ce_status ce_read_step(const ce_curve *curve, const ce_place *place, ce_window edge,
@@ -384,13 +486,15 @@ ce_status ce_read_step(const ce_curve *curve, const ce_place *place, ce_window e
                                      fmin(edge.high_K, curve->T[curve->n - 1] - 1.5), tolerance);
         out->glass = s.glass;
         out->liquid = s.liquid;
-        out->lines = s.lines;
-        out->points = s.p;
         out->noise = curve->noise;
-        for (int k = 0; k < CE_CONSTRUCTIONS; k++) out->u_noise[k] = out->u_window[k] = 0.1;
-        st = take_model(&s, o, out);
+        st = isnan(o->glass.low_K) && isnan(o->liquid.low_K) ? take_model(&s, o, out) : CE_E_NOFIT;
         if (st == CE_E_NOMEM) (void)ce_fail(err, st, "out of memory");
-        else st = CE_OK;
+        else {
+            if (st != CE_OK) take_windows(&s, o, out);
+            st = CE_OK;
+            survey(&s, out);
+            out->strength = place->score / fmax(1.0, out->rough / 0.01);
+        }
     }
     free(t);
     return st;

@@ -20,6 +20,8 @@ typedef struct {
     double points_within;    /* recorded points between onset and end                           */
     double event_K;          /* distance of the next event from the end; NaN = none             */
     double missing_K;        /* baseline that the run lacks; 0 = none                           */
+    double rough;            /* what the better description leaves over, r.m.s. in steps        */
+    double strength;         /* of the evidence: height over all that is left unexplained       */
     bool model;
 } ce_finding;
 

@@ -3,7 +3,6 @@
 #include "transition/flags.h"
 
 #include <math.h>
-#include <stdio.h>
 #include <stdlib.h>
 #include <string.h>
 
@@ -85,6 +84,19 @@ typedef struct {
     double score;
 } findings;
 
+static int stronger(const void *a, const void *b)
+{
+    const ce_finding *x = a, *y = b;
+    return (x->strength < y->strength) - (x->strength > y->strength);
+}
+
+/* A further transition must be as clean as a first one: peaks and bends look like small steps. */
+static bool another(const ce_finding *f, const ce_finding *strongest)
+{
+    return f->strength > 6.0 && f->rough < 0.03 && f->points.step > 0.1 * strongest->points.step &&
+           fabs(f->points.at[CE_HALF_STEP] - strongest->points.at[CE_HALF_STEP]) > 8.0;
+}
+
 static ce_status find_places(const ce_run *run, const ce_segment *s, const ce_curve *c,
                              const ce_transition_options *o, findings *found, ce_error *err)
 {
@@ -99,19 +111,24 @@ static ce_status find_places(const ce_run *run, const ce_segment *s, const ce_cu
         return ce_fail(err, CE_E_REFUSED, "no step in segment %zu: one of %.2g %s would have been seen",
                        s->index, detectable * (isnan(factor) ? 1.0 : factor),
                        isnan(factor) ? ce_signal_unit(ce_run_signal_kind(run)) : "J/(g K)");
-    for (size_t i = 0; i < n && getenv("CE_DEBUG"); i++) fprintf(stderr, "place %.1f %.1f step %.3g score %.2f\n", place[i].low_K, place[i].high_K, place[i].step, place[i].score);
-    found->score = place[0].score;
-    while (n > 1 && (place[n - 1].score < 6.0 || place[n - 1].step < 0.1 * place[0].step)) n--;
-    for (size_t i = 0; i < n && (i == 0 || isnan(o->glass.low_K)); i++) {
-        ce_finding f;
+    ce_finding f[MOST_TRANSITIONS];
+    size_t kept = 0;
+    ce_error first = CE_ERROR_INIT;
+    for (size_t i = 0; i < n && (i == 0 || place[i].score > 0.5 * place[0].score); i++) {
         ce_error e = CE_ERROR_INIT;
-        st = ce_read_step(c, &place[i], edge_of(place, n, i), o, &f, &e);
-        if (st == CE_OK) found->item[found->n++] = present(run, s, c, o, &f);
-        else if (i == 0 || st == CE_E_NOMEM) {
-            if (err != NULL && err->code == CE_OK) *err = e;
-            return st;
-        }
+        st = ce_read_step(c, &place[i], edge_of(place, n, i), o, &f[kept], &e);
+        if (st == CE_E_NOMEM) return ce_fail(err, st, "out of memory");
+        if (st == CE_OK) kept++;
+        else if (first.code == CE_OK) first = e;
     }
+    if (kept == 0) {
+        if (err != NULL && err->code == CE_OK) *err = first;
+        return first.code;
+    }
+    qsort(f, kept, sizeof *f, stronger);
+    found->score = f[0].strength;
+    for (size_t i = 0; i < kept && found->n < MOST_TRANSITIONS; i++)
+        if (i == 0 || another(&f[i], &f[0])) found->item[found->n++] = present(run, s, c, o, &f[i]);
     return CE_OK;
 }
 

@@ -436,6 +436,11 @@ ce_lines ce_model_lines(const ce_model *m)
     };
 }
 
+double ce_model_hook(const ce_model *m, double T)
+{
+    return m->linear[L_HOOK] * hook_at(m, hook_rate(m, m->shape), T, T);
+}
+
 double ce_model_lag(const ce_model *m)
 {
     return relax_of(m, m->shape).lag_K * (m->cooling ? -1.0 : 1.0);

@@ -93,6 +93,8 @@ void ce_model_columns(const ce_model *model, size_t n, const double *low, const 
 /* The curve they make, without the start-up. */
 void ce_model_combine(const ce_model *model, size_t n, const double *phi, double *y);
 ce_lines ce_model_lines(const ce_model *model);
+/* The start-up at a temperature, in the signal's unit. */
+double ce_model_hook(const ce_model *model, double T);
 /* Shift of the equal-area temperature against the fictive one by the instrument's lag, K. */
 double ce_model_lag(const ce_model *model);
 /* Move one of the CE_FREE parameters, shape first; its step for differentiation. */
