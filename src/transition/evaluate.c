@@ -4,6 +4,7 @@
 #include "transition/lines.h"
 
 #include <math.h>
+#include <stdio.h>
 #include <stdlib.h>
 #include <string.h>
 
@@ -367,6 +368,7 @@ static ce_status take_model(const by_windows *s, const ce_transition_options *o,
         model_cells(m, s->p.at[CE_HALF_STEP], s->width);
         model_columns(&f.model, m);
         if (!construct_model(&f.model, m, &f.lines, &f.p)) st = CE_E_NOFIT;
+        if (getenv("CE_DEBUG")) { for (size_t i = 0; i < m->n - FAR; i += 10) fprintf(stderr, "%.2f %g tf %g step %g\n", m->T[i], m->y[i], m->tf[FAR+i], m->step[FAR+i]); for (int i=0;i<9;i++) fprintf(stderr," %g", f.model.shape[i]); fprintf(stderr, " fine %g ref %g\n", f.model.fine_K, f.model.ref_K); }
     }
     if (st == CE_OK) {
         const double rough = roughness(s, &f);

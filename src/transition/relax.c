@@ -112,6 +112,10 @@ static void ramp(state *s, double to, double per_K)
 {
     while (s->T != to) {
         const double left = to - s->T, far = longest(s->relax, s->T);
+        if (!(left * per_K > 1e-9)) { /* cells that touch, but for rounding                    */
+            s->T = to;
+            return;
+        }
         const double parts = ceil(fabs(left) / far - 1e-9);
         const double dT = parts <= 1.0 ? left : left / parts;
         advance(s, dT, dT * per_K);
