@@ -62,8 +62,8 @@ static double level_crossing(const ce_trace *t, double level, double near)
     double best = (double)NAN;
     for (size_t i = 1; i < t->n; i++) {
         if (!(t->y[i - 1] < level && t->y[i] >= level)) continue;
-        const double T = t->T[i - 1] +
-                         (t->T[i] - t->T[i - 1]) * (level - t->y[i - 1]) / (t->y[i] - t->y[i - 1]);
+        const double T =
+            t->T[i - 1] + (t->T[i] - t->T[i - 1]) * (level - t->y[i - 1]) / (t->y[i] - t->y[i - 1]);
         if (isnan(best) || fabs(T - near) < fabs(best - near)) best = T;
     }
     return best;

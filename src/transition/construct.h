@@ -14,9 +14,9 @@ typedef struct {
 typedef struct {
     double at[CE_CONSTRUCTIONS]; /* NaN = does not exist                                        */
     ce_line tangent;
-    double step;                 /* liquid minus glass line at the half-step                    */
-    double overshoot;            /* height above the liquid line over the step                  */
-    double low_K, high_K;        /* where the trace has risen by 0.1 and by 0.9                 */
+    double step;          /* liquid minus glass line at the half-step                    */
+    double overshoot;     /* height above the liquid line over the step                  */
+    double low_K, high_K; /* where the trace has risen by 0.1 and by 0.9                 */
 } ce_points;
 
 /* False when the trace does not cross between the lines. area_K: the equal-area temperature is

@@ -68,8 +68,10 @@ size_t ce_curve_index(const ce_curve *curve, double T)
     size_t low = 0, high = curve->n;
     while (low < high) {
         const size_t mid = low + (high - low) / 2;
-        if (curve->T[mid] < T) low = mid + 1;
-        else high = mid;
+        if (curve->T[mid] < T)
+            low = mid + 1;
+        else
+            high = mid;
     }
     return low;
 }

@@ -4,14 +4,13 @@
 #include "transition/lines.h"
 
 #include <math.h>
-#include <stdio.h>
 #include <stdlib.h>
 #include <string.h>
 
 enum { TRACE = 600 };
 static const double most_rough = 0.03;       /* what a model may leave over of a step           */
 static const double least_baseline_K = 10.0; /* beside the step, else the run cuts it off       */
-static const double inexact_start = 0.02; /* and of a start-up, relative */
+static const double inexact_start = 0.02;    /* and of a start-up, relative */
 static const double inexact_steps = 1e-3; /* what the model may miss of a step, any cell        */
 
 /* Room for one trace. */
@@ -56,7 +55,8 @@ typedef struct {
 static double smoothing(const ce_curve *c, double step, double width)
 {
     const double density = 1.0 / fmax(c->spacing, 1e-6), aim = 0.03 * step / width;
-    const double w = c->w[c->n / 2], h = cbrt(1.5 * c->noise * c->noise / (w * density * aim * aim));
+    const double w = c->w[c->n / 2],
+                 h = cbrt(1.5 * c->noise * c->noise / (w * density * aim * aim));
     return clamp(h, fmax(3.0 * c->spacing, 0.04 * width), fmax(0.3 * width, 3.0 * c->spacing));
 }
 
@@ -64,9 +64,10 @@ static bool construct_on(by_windows *s)
 {
     s->lines = (ce_lines){s->g.line, s->l.line};
     const double from = s->glass.high_K - 8.0, to = s->liquid.low_K + 8.0;
-    s->smooth_K = smoothing(s->curve, fabs(ce_line_at(&s->l.line, 0.5 * (from + to)) -
-                                           ce_line_at(&s->g.line, 0.5 * (from + to))),
-                            fmax(s->width, 1.0));
+    s->smooth_K = smoothing(
+        s->curve,
+        fabs(ce_line_at(&s->l.line, 0.5 * (from + to)) - ce_line_at(&s->g.line, 0.5 * (from + to))),
+        fmax(s->width, 1.0));
     lay_out(s->t, fmax(from, s->curve->T[0]), fmin(to, s->curve->T[s->curve->n - 1]),
             fmax(0.1 * s->smooth_K, 0.02));
     for (size_t i = 0; i < s->t->trace.n; i++)
@@ -212,8 +213,7 @@ static void weigh_cells(const by_windows *s, ce_cells *cells)
     /* below the glass window the start-up need not be the exponential of the model */
     for (size_t i = 0; i < cells->n; i++) {
         const double T = cells->T[i];
-        const double off =
-            T < s->glass.low_K ? cells->y[i] - ce_line_at(&s->g.line, T) : 0.0;
+        const double off = T < s->glass.low_K ? cells->y[i] - ce_line_at(&s->g.line, T) : 0.0;
         cells->sd[i] = hypot(inexact_steps * s->p.step, inexact_start * off);
     }
 }
@@ -249,8 +249,7 @@ static ce_status fit_model(const by_windows *s, ce_window range, by_model *f)
     const ce_curve *c = s->curve;
     const double centre = s->p.at[CE_HALF_STEP];
     const double fine = clamp(s->width / 16.0, fmax(0.1, c->spacing), 0.4);
-    ce_model start = ce_model_start(c->cooling, centre, s->width,
-                                    fmax(c->noise, 1e-9 * s->p.step),
+    ce_model start = ce_model_start(c->cooling, centre, s->width, fmax(c->noise, 1e-9 * s->p.step),
                                     c->cooling ? c->T[c->n - 1] : c->T[0]);
     start.fine_K = clamp(s->width / 16.0, 0.15, 0.5);
     ce_status st = ce_cells_make(c, range.low_K, range.high_K, centre, fine, &f->cells);
@@ -291,7 +290,7 @@ static ce_status add_effect(const by_model *f, const double *share, double facto
                             double sum[CE_CONSTRUCTIONS + 2])
 {
     double shift[CE_FREE];
-    const ce_status st = ce_model_reweigh(&f->model, &f->design, share, shift);
+    const ce_status st = ce_model_reweigh(&f->design, share, shift);
     if (st != CE_OK) return st;
     for (int k = 0; k < CE_CONSTRUCTIONS + 2; k++) {
         double effect = 0.0;
@@ -317,6 +316,12 @@ static ce_status window_part(const by_model *f, double sum[CE_CONSTRUCTIONS + 2]
     return st;
 }
 
+/* What histories that fit equally well leave open, K for a step 10 K wide, growing with the square
+ * of the width; from the tuning half of tests/bench/transition_accuracy. */
+static const double model_part[CE_CONSTRUCTIONS] = {
+    [CE_ONSET] = 0.10,      [CE_MIDPOINT] = 0.07, [CE_HALF_STEP] = 0.08,
+    [CE_INFLECTION] = 0.04, [CE_END] = 0.03,      [CE_FICTIVE] = 0.40};
+
 static ce_status model_uncertainty(const by_windows *s, by_model *f, modelling *m,
                                    const ce_transition_options *o, ce_finding *out)
 {
@@ -324,9 +329,10 @@ static ce_status model_uncertainty(const by_windows *s, by_model *f, modelling *
     if (!gradients(f, m)) return CE_E_NOFIT;
     if (o->ensemble && window_part(f, sum) == CE_E_NOMEM) return CE_E_NOMEM;
     const double least = 0.01 * s->curve->spacing + 1e-3;
+    const double broad = s->width * s->width / 100.0 * (f->model.aged ? 1.5 : 1.0);
     for (int k = 0; k < CE_CONSTRUCTIONS; k++) {
         out->u_noise[k] = hypot(sqrt(variance(f, (size_t)k)), least);
-        out->u_window[k] = sqrt(sum[k]);
+        out->u_window[k] = hypot(sqrt(sum[k]), model_part[k] * broad);
     }
     out->step_u = sqrt(variance(f, CE_CONSTRUCTIONS) + sum[CE_CONSTRUCTIONS]);
     out->width_u = sqrt(variance(f, CE_CONSTRUCTIONS + 1) + sum[CE_CONSTRUCTIONS + 1]);
@@ -354,8 +360,8 @@ static double roughness(const by_windows *s, const by_model *f)
 static bool follows(const by_windows *s, const by_model *f, double rough)
 {
     const double apart = fabs(f->p.at[CE_HALF_STEP] - s->p.at[CE_HALF_STEP]);
-    return rough < most_rough && apart < fmax(0.5 * s->width, 2.0) &&
-           f->p.step > 0.5 * s->p.step && f->p.step < 2.0 * s->p.step;
+    return rough < most_rough && apart < fmax(0.5 * s->width, 2.0) && f->p.step > 0.5 * s->p.step &&
+           f->p.step < 2.0 * s->p.step;
 }
 
 /* The model's lines and constructions, where it follows the curve; CE_E_NOFIT where it does not. */
@@ -368,12 +374,13 @@ static ce_status take_model(const by_windows *s, const ce_transition_options *o,
         model_cells(m, s->p.at[CE_HALF_STEP], s->width);
         model_columns(&f.model, m);
         if (!construct_model(&f.model, m, &f.lines, &f.p)) st = CE_E_NOFIT;
-        if (getenv("CE_DEBUG")) { for (size_t i = 0; i < m->n - FAR; i += 10) fprintf(stderr, "%.2f %g tf %g step %g\n", m->T[i], m->y[i], m->tf[FAR+i], m->step[FAR+i]); for (int i=0;i<9;i++) fprintf(stderr," %g", f.model.shape[i]); fprintf(stderr, " fine %g ref %g\n", f.model.fine_K, f.model.ref_K); }
     }
     if (st == CE_OK) {
         const double rough = roughness(s, &f);
-        if (!follows(s, &f, rough)) st = CE_E_NOFIT;
-        else st = model_uncertainty(s, &f, m, o, out);
+        if (!follows(s, &f, rough))
+            st = CE_E_NOFIT;
+        else
+            st = model_uncertainty(s, &f, m, o, out);
         if (st == CE_OK) {
             out->points = f.p;
             out->lines = f.lines;
@@ -394,7 +401,8 @@ static ce_status take_model(const by_windows *s, const ce_transition_options *o,
 static void window_noise(const by_windows *s, ce_finding *out)
 {
     const ce_curve *c = s->curve;
-    const double T = s->p.at[CE_HALF_STEP], slope = fmax(s->p.tangent.slope - s->g.line.slope, 1e-300);
+    const double T = s->p.at[CE_HALF_STEP],
+                 slope = fmax(s->p.tangent.slope - s->g.line.slope, 1e-300);
     const double dg = T - s->g.line.ref_K, dl = T - s->l.line.ref_K;
     const double vg = s->g.var_at + dg * dg * s->g.var_slope;
     const double vl = s->l.var_at + dl * dl * s->l.var_slope;
@@ -404,8 +412,7 @@ static void window_noise(const by_windows *s, ce_finding *out)
         [CE_ONSET] = {1.0, 0.0},      [CE_MIDPOINT] = {0.25, 0.25}, [CE_HALF_STEP] = {0.25, 0.25},
         [CE_INFLECTION] = {0.0, 0.0}, [CE_END] = {0.0, 1.0},        [CE_FICTIVE] = {0.0, 0.0}};
     for (int k = 0; k < CE_CONSTRUCTIONS; k++)
-        out->u_noise[k] =
-            hypot(sqrt(weight[k][0] * vg + weight[k][1] * vl + local) / slope, least);
+        out->u_noise[k] = hypot(sqrt(weight[k][0] * vg + weight[k][1] * vl + local) / slope, least);
     /* the steepest place wanders over a good part of the step where noise bends it */
     out->u_noise[CE_INFLECTION] =
         hypot(least + 0.25 * s->smooth_K, sqrt(local) / s->p.step * s->width);
@@ -443,9 +450,10 @@ static void window_ensemble(const by_windows *s, ce_finding *out)
 
 static void take_windows(const by_windows *s, const ce_transition_options *o, ce_finding *out)
 {
-    const double sag = fmax(fabs(s->g.bend) - 2.0 * s->g.bend_u, fabs(s->l.bend) - 2.0 * s->l.bend_u);
-    const double rest = sqrt(fmax(s->g.sd * s->g.sd + s->l.sd * s->l.sd -
-                                      2.0 * s->curve->noise * s->curve->noise, 0.0));
+    const double sag =
+        fmax(fabs(s->g.bend) - 2.0 * s->g.bend_u, fabs(s->l.bend) - 2.0 * s->l.bend_u);
+    const double rest = sqrt(
+        fmax(s->g.sd * s->g.sd + s->l.sd * s->l.sd - 2.0 * s->curve->noise * s->curve->noise, 0.0));
     out->points = s->p;
     out->lines = s->lines;
     out->model = false;
@@ -468,7 +476,8 @@ static void survey(const by_windows *s, ce_finding *out)
     const size_t b = ce_curve_index(c, fmax(end, out->points.high_K));
     for (size_t i = ce_curve_index(c, fmin(on, out->points.low_K)); i < b; i++)
         out->points_within += c->w[i];
-    out->missing_K = fmax(fmax(least_baseline_K - (last - end), least_baseline_K - (on - first)), 0.0);
+    out->missing_K =
+        fmax(fmax(least_baseline_K - (last - end), least_baseline_K - (on - first)), 0.0);
     out->event_K = out->range.high_K < fmin(last, s->edge.high_K) - 4.0 ? out->range.high_K - end
                                                                         : (double)NAN;
 }
@@ -490,7 +499,8 @@ ce_status ce_read_step(const ce_curve *curve, const ce_place *place, ce_window e
         out->liquid = s.liquid;
         out->noise = curve->noise;
         st = isnan(o->glass.low_K) && isnan(o->liquid.low_K) ? take_model(&s, o, out) : CE_E_NOFIT;
-        if (st == CE_E_NOMEM) (void)ce_fail(err, st, "out of memory");
+        if (st == CE_E_NOMEM)
+            (void)ce_fail(err, st, "out of memory");
         else {
             if (st != CE_OK) take_windows(&s, o, out);
             st = CE_OK;

@@ -14,20 +14,20 @@ typedef struct {
     ce_points points;
     double u_noise[CE_CONSTRUCTIONS], u_window[CE_CONSTRUCTIONS];
     double step_u, width_u;
-    double noise;            /* of a recorded point                                             */
-    double hook;             /* start-up at the first point of the glass window, in steps       */
-    double bend;             /* the larger sag of a window, in steps                            */
-    double points_within;    /* recorded points between onset and end                           */
-    double event_K;          /* distance of the next event from the end; NaN = none             */
-    double missing_K;        /* baseline that the run lacks; 0 = none                           */
-    double rough;            /* what the better description leaves over, r.m.s. in steps        */
-    double strength;         /* of the evidence: height over all that is left unexplained       */
+    double noise;         /* of a recorded point                                             */
+    double hook;          /* start-up at the first point of the glass window, in steps       */
+    double bend;          /* the larger sag of a window, in steps                            */
+    double points_within; /* recorded points between onset and end                           */
+    double event_K;       /* distance of the next event from the end; NaN = none             */
+    double missing_K;     /* baseline that the run lacks; 0 = none                           */
+    double rough;         /* what the better description leaves over, r.m.s. in steps        */
+    double strength;      /* of the evidence: height over all that is left unexplained       */
     bool model;
 } ce_finding;
 
 /* Windows NaN = choose; edge: no data beyond (neighbouring transitions). CE_OK | CE_E_REFUSED |
  * CE_E_NOMEM, with a message. */
 ce_status ce_read_step(const ce_curve *curve, const ce_place *place, ce_window edge,
-                      const ce_transition_options *options, ce_finding *finding, ce_error *err);
+                       const ce_transition_options *options, ce_finding *finding, ce_error *err);
 
 #endif

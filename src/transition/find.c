@@ -17,9 +17,12 @@ static double to_heat_capacity(const ce_run *run, const ce_segment *s)
 {
     const double per_s = fabs(s->rate_K_min) / 60.0;
     switch (ce_run_signal_kind(run)) {
-    case CE_SIGNAL_HEAT_CAPACITY: return 1.0;
-    case CE_SIGNAL_SPECIFIC_POWER: return per_s > 0.0 ? 1.0 / per_s : (double)NAN;
-    case CE_SIGNAL_POWER: break;
+    case CE_SIGNAL_HEAT_CAPACITY:
+        return 1.0;
+    case CE_SIGNAL_SPECIFIC_POWER:
+        return per_s > 0.0 ? 1.0 / per_s : (double)NAN;
+    case CE_SIGNAL_POWER:
+        break;
     }
     const double mg = 1000.0 * ce_run_mass_g(run);
     return per_s > 0.0 && mg > 0.0 ? 1.0 / (mg * per_s) : (double)NAN;
@@ -56,8 +59,8 @@ static ce_transition present(const ce_run *run, const ce_segment *s, const ce_cu
         .model_lines = f->model,
     };
     for (size_t k = 0; k < CE_CONSTRUCTIONS; k++)
-        t.tg[k] = (ce_reading){f->points.at[k], hypot(f->u_noise[k], f->u_window[k]),
-                               f->u_noise[k], f->u_window[k]};
+        t.tg[k] = (ce_reading){f->points.at[k], hypot(f->u_noise[k], f->u_window[k]), f->u_noise[k],
+                               f->u_window[k]};
     ce_flag_finding(f, &t);
     if (!isnan(factor) && (t.step_height < 0.15 || t.step_height > 0.65))
         ce_add_flag(&t, CE_FLAG_STEP_IMPLAUSIBLE, t.step_height);
@@ -84,6 +87,13 @@ typedef struct {
     double score;
 } findings;
 
+/* Above some 180 degC decomposition and its steps become likelier than a glass transition; the
+ * evidence there counts less (common practice: look below first). */
+static void prefer_low(ce_finding *f)
+{
+    f->strength /= 1.0 + fmax(f->points.at[CE_HALF_STEP] - 450.0, 0.0) / 50.0;
+}
+
 static int stronger(const void *a, const void *b)
 {
     const ce_finding *x = a, *y = b;
@@ -108,8 +118,9 @@ static ce_status find_places(const ce_run *run, const ce_segment *s, const ce_cu
                              MOST_TRANSITIONS, &n, &detectable);
     if (st != CE_OK) return ce_fail(err, st, "out of memory");
     if (n == 0)
-        return ce_fail(err, CE_E_REFUSED, "no step in segment %zu: one of %.2g %s would have been seen",
-                       s->index, detectable * (isnan(factor) ? 1.0 : factor),
+        return ce_fail(err, CE_E_REFUSED,
+                       "no step in segment %zu: one of %.2g %s would have been seen", s->index,
+                       detectable * (isnan(factor) ? 1.0 : factor),
                        isnan(factor) ? ce_signal_unit(ce_run_signal_kind(run)) : "J/(g K)");
     ce_finding f[MOST_TRANSITIONS];
     size_t kept = 0;
@@ -118,8 +129,10 @@ static ce_status find_places(const ce_run *run, const ce_segment *s, const ce_cu
         ce_error e = CE_ERROR_INIT;
         st = ce_read_step(c, &place[i], edge_of(place, n, i), o, &f[kept], &e);
         if (st == CE_E_NOMEM) return ce_fail(err, st, "out of memory");
-        if (st == CE_OK) kept++;
-        else if (first.code == CE_OK) first = e;
+        if (st == CE_OK)
+            prefer_low(&f[kept++]);
+        else if (first.code == CE_OK)
+            first = e;
     }
     if (kept == 0) {
         if (err != NULL && err->code == CE_OK) *err = first;
@@ -164,9 +177,26 @@ static bool cooled_before(const ce_segment *s, size_t i, const ce_transition *t)
     return false;
 }
 
-static ce_status hand_over(const ce_run *run, const ce_segment *s, size_t i, findings *f,
-                           ce_transitions *found, ce_error *err)
+/* The first heating against this one: a difference that its uncertainty does not explain. */
+static void compare_heatings(const ce_run *run, const ce_segment *s, size_t i,
+                             const ce_transition_options *o, ce_transition *t)
 {
+    if (s[i].kind != CE_HEATING || s[i].nth_of_kind < 2) return;
+    size_t k = 0;
+    while (k < i && s[k].kind != CE_HEATING) k++;
+    findings first;
+    if (k == i || find_in(run, &s[k], o, false, &first, NULL) != CE_OK) return;
+    const ce_reading *a = &first.item[0].tg[CE_HALF_STEP], *b = &t->tg[CE_HALF_STEP];
+    const double off = a->value_K - b->value_K;
+    if (fabs(off) > 2.0 * hypot(a->u_K, b->u_K) && fabs(off) < 60.0)
+        ce_add_flag(t, CE_FLAG_HEATINGS_DIFFER, off);
+}
+
+static ce_status hand_over(const ce_run *run, const ce_segment *s, size_t i,
+                           const ce_transition_options *o, findings *f, ce_transitions *found,
+                           ce_error *err)
+{
+    compare_heatings(run, s, i, o, &f->item[0]);
     for (size_t k = 0; k < f->n; k++) {
         ce_transition *t = &f->item[k];
         if (s[i].kind == CE_HEATING && s[i].nth_of_kind == 1 && !cooled_before(s, i, t))
@@ -184,8 +214,7 @@ static ce_status hand_over(const ce_run *run, const ce_segment *s, size_t i, fin
 ce_status ce_transition_find(const ce_run *run, const ce_transition_options *options,
                              ce_transitions *found, ce_error *err)
 {
-    const ce_transition_options o =
-        options != NULL ? *options : ce_transition_options_default();
+    const ce_transition_options o = options != NULL ? *options : ce_transition_options_default();
     *found = (ce_transitions){0};
     size_t n;
     const ce_segment *s = ce_run_segments(run, &n);
@@ -195,7 +224,7 @@ ce_status ce_transition_find(const ce_run *run, const ce_transition_options *opt
         findings f;
         ce_error e = CE_ERROR_INIT;
         if (find_in(run, &s[i], &o, s[i].kind == CE_COOLING, &f, &e) == CE_OK)
-            return hand_over(run, s, i, &f, found, err);
+            return hand_over(run, s, i, &o, &f, found, err);
         if (last.code == CE_OK) last = e;
     }
     if (last.code != CE_OK) {
@@ -220,7 +249,8 @@ ce_status ce_run_settle_sign(ce_run *run, ce_error *err)
         const ce_status a = find_in(run, &s[i], &o, false, &up, NULL);
         const ce_status b = find_in(run, &s[i], &o, true, &down, NULL);
         if (a != CE_OK && b != CE_OK) continue;
-        return ce_run_flip(run, a != CE_OK || (b == CE_OK && down.score > up.score),
+        /* as the file has it, unless the other way is clearly the better glass transition */
+        return ce_run_flip(run, a != CE_OK || (b == CE_OK && down.score > 1.5 * up.score),
                            "step of the glass transition", err);
     }
     return CE_OK;

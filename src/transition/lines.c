@@ -34,7 +34,8 @@ bool ce_fit_line(const ce_curve *c, ce_window window, ce_fitted_line *fit)
         qq += c->w[i] * q * q;
         qr += c->w[i] * q * r;
     }
-    const double n = (double)(b - a), rho = square > 0.0 ? fmin(fmax(next / square, 0.0), 0.98) : 0.0;
+    const double n = (double)(b - a),
+                 rho = square > 0.0 ? fmin(fmax(next / square, 0.0), 0.98) : 0.0;
     const double variance = square / (n - 2.0), inflate = (1.0 + rho) / (1.0 - rho);
     fit->sd = sqrt(variance);
     fit->var_at = variance * inflate / w;
@@ -93,8 +94,10 @@ double ce_smooth(const ce_curve *c, double T, double half)
     size_t a = ce_curve_index(c, T - half), b = ce_curve_index(c, T + half);
     while (b < a + 6) { /* sparse: take in the nearest points */
         if (a == 0 && b == c->n) return (double)NAN;
-        if (b == c->n || (a > 0 && T - c->T[a - 1] < c->T[b] - T)) a--;
-        else b++;
+        if (b == c->n || (a > 0 && T - c->T[a - 1] < c->T[b] - T))
+            a--;
+        else
+            b++;
     }
     const double reach = fmax(fmax(T - c->T[a], c->T[b - 1] - T), 1e-9) * 1.05;
     double A[4][4] = {{0}}, r[4] = {0};

@@ -15,15 +15,15 @@
  * about glasses: it decides only what the curve leaves open. */
 enum { S_TR, S_UNIT, S_X, S_BETA, S_COOLING, S_AGE, S_AGE_AT, S_LAG, S_HOOK };
 static const double prior_sd[CE_SHAPES] = {
-    [S_TR] = 20.0,      /* K, around the step found                                             */
-    [S_UNIT] = 0.6,     /* ln of Tr^2/h in K, around 1.2 K                                      */
-    [S_X] = 0.4,        /* ln of odds of x over Tr^2/h, around 0.3 /K                                 */
-    [S_BETA] = 0.4,     /* logit of beta minus logit of x, around ln 2.5                        */
-    [S_COOLING] = 0.8,  /* ln of the rate ratio, around equal rates                             */
-    [S_AGE] = 3.0,      /* ln of annealing time times rate in K, around 3 K                     */
-    [S_AGE_AT] = 6.0,   /* K below Tr, around 16 K                                              */
-    [S_LAG] = 1.5,      /* ln of the instrument's lag in K, around 0.2 K                        */
-    [S_HOOK] = 1.0,     /* ln of the decay of the start-up in K, around 3 K                     */
+    [S_TR] = 20.0,  /* K, around the step found                                             */
+    [S_UNIT] = 0.6, /* ln of Tr^2/h in K, around 1.2 K                                      */
+    [S_X] = 0.4,    /* ln of odds of x over Tr^2/h, around 0.3 /K                                 */
+    [S_BETA] = 0.4, /* logit of beta minus logit of x, around ln 2.5                        */
+    [S_COOLING] = 0.8, /* ln of the rate ratio, around equal rates                             */
+    [S_AGE] = 3.0,     /* ln of annealing time times rate in K, around 3 K                     */
+    [S_AGE_AT] = 6.0,  /* K below Tr, around 16 K                                              */
+    [S_LAG] = 1.5,     /* ln of the instrument's lag in K, around 0.2 K                        */
+    [S_HOOK] = 1.0,    /* ln of the decay of the start-up in K, around 3 K                     */
 };
 enum { L_GLASS, L_GLASS_SLOPE, L_STEP, L_STEP_SLOPE, L_HOOK, L_CURVE };
 static const double lever_K = 50.0; /* unit of the slopes: K */
@@ -79,8 +79,10 @@ static void columns(const ce_model *m, const double *shape, const ce_modes *mode
                     const double *low, const double *high, double *tf, double *step, double *out)
 {
     ce_relax r = relax_of(m, shape);
-    if (modes != NULL) r.modes = *modes;
-    else ce_relax_modes(r.beta, &r.modes);
+    if (modes != NULL)
+        r.modes = *modes;
+    else
+        ce_relax_modes(r.beta, &r.modes);
     ce_relax_scan(&r, m->cooling, n, low, high, tf, step);
     const double hook = hook_rate(m, shape);
     for (size_t i = 0; i < n; i++) {
@@ -100,7 +102,7 @@ static void columns(const ce_model *m, const double *shape, const ce_modes *mode
 typedef struct {
     ce_model *m;
     const ce_cells *cells;
-    size_t rows;       /* cells + CE_LINEAR                                                     */
+    size_t rows; /* cells + CE_LINEAR                                                     */
     double linear_prior[CE_LINEAR]; /* 1/sd; 0 = none                                           */
     double *tf, *step; /* scratch, one a cell                                                   */
     double *phi, *alt; /* rows * CE_LINEAR                                                      */
@@ -232,7 +234,7 @@ static int jacobian(const gsl_vector *shape, void *data, gsl_matrix *J)
 }
 
 /* Normal matrix of all parameters with its priors, the rows weighted by share (NULL = 1). */
-static gsl_matrix *normal_matrix(const ce_model *m, const ce_design *d, const double *share)
+static gsl_matrix *normal_matrix(const ce_design *d, const double *share)
 {
     gsl_matrix *N = gsl_matrix_calloc(CE_FREE, CE_FREE);
     if (N == NULL) return NULL;
@@ -244,8 +246,10 @@ static gsl_matrix *normal_matrix(const ce_model *m, const ce_design *d, const do
                 dot += (share == NULL ? 1.0 : share[i]) * Ja[i] * Jb[i];
             for (size_t i = d->cells; i < d->n; i++) dot += Ja[i] * Jb[i];
             if (a == b) {
-                if (a < CE_SHAPES) dot += 1.0 / (prior_sd[a] * prior_sd[a]);
-                else if (!(dot > 0.0)) dot = 1e300; /* a parameter that is not used            */
+                if (a < CE_SHAPES)
+                    dot += 1.0 / (prior_sd[a] * prior_sd[a]);
+                else if (!(dot > 0.0))
+                    dot = 1e300; /* a parameter that is not used            */
                 dot *= 1.0 + 1e-10;
             }
             gsl_matrix_set(N, a, b, dot);
@@ -269,7 +273,7 @@ static int linearise(problem *p, const double *shape, const double *res, ce_desi
     for (size_t k = 0; k < CE_LINEAR; k++)
         for (size_t i = 0; p->used[k] && i < d->n; i++)
             d->J[(CE_SHAPES + k) * d->n + i] = p->phi[i * CE_LINEAR + k];
-    gsl_matrix *N = normal_matrix(m, d, NULL);
+    gsl_matrix *N = normal_matrix(d, NULL);
     if (N == NULL) return GSL_ENOMEM;
     int status = gsl_linalg_cholesky_decomp1(N);
     if (status == GSL_SUCCESS) status = gsl_linalg_cholesky_invert(N);
@@ -285,10 +289,9 @@ void ce_design_free(ce_design *design)
     *design = (ce_design){0};
 }
 
-ce_status ce_model_reweigh(const ce_model *m, const ce_design *d, const double *share,
-                           double shift[CE_FREE])
+ce_status ce_model_reweigh(const ce_design *d, const double *share, double shift[CE_FREE])
 {
-    gsl_matrix *N = normal_matrix(m, d, share);
+    gsl_matrix *N = normal_matrix(d, share);
     if (N == NULL) return CE_E_NOMEM;
     for (size_t a = 0; a < CE_FREE; a++) {
         shift[a] = 0.0;
@@ -361,11 +364,10 @@ void ce_model_cooled(ce_model *m, double log_ratio)
 ce_model ce_model_start(bool cooling, double centre_K, double width_K, double sigma,
                         double hook_from_K)
 {
-    const double mean[CE_SHAPES] = {[S_TR] = centre_K + 2.0, [S_UNIT] = log(1.2),
-                                    [S_X] = log(0.3),        [S_BETA] = 1.0,
-                                    [S_COOLING] = 0.0,       [S_AGE] = log(30.0),
-                                    [S_AGE_AT] = 16.0,       [S_LAG] = log(0.2),
-                                    [S_HOOK] = log(3.0)};
+    const double mean[CE_SHAPES] = {
+        [S_TR] = centre_K + 2.0, [S_UNIT] = log(1.2), [S_X] = log(0.3),
+        [S_BETA] = 1.0,          [S_COOLING] = 0.0,   [S_AGE] = log(30.0),
+        [S_AGE_AT] = 16.0,       [S_LAG] = log(0.2),  [S_HOOK] = log(3.0)};
     ce_model m = {.cooling = cooling,
                   .ref_K = centre_K,
                   .sigma = sigma,
@@ -448,12 +450,15 @@ double ce_model_lag(const ce_model *m)
 
 void ce_model_move(ce_model *m, size_t parameter, double by)
 {
-    if (parameter < CE_SHAPES) m->shape[parameter] += by;
-    else m->linear[parameter - CE_SHAPES] += by;
+    if (parameter < CE_SHAPES)
+        m->shape[parameter] += by;
+    else
+        m->linear[parameter - CE_SHAPES] += by;
 }
 
 double ce_model_increment(const ce_model *m, size_t parameter)
 {
-    if (parameter < CE_SHAPES) return active(m, parameter) ? 0.02 * fmin(prior_sd[parameter], 1.0) : 0.0;
+    if (parameter < CE_SHAPES)
+        return active(m, parameter) ? 0.02 * fmin(prior_sd[parameter], 1.0) : 0.0;
     return 1e-4 * fmax(fabs(m->linear[L_STEP]), 1e-300);
 }

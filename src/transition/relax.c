@@ -31,7 +31,7 @@ void ce_relax_modes(double beta, ce_modes *modes)
     const double least = (1.0 - beta) * pow(beta, c), step = log(2.0) / chains;
     double z = 9.0 / least, s = pow(z, -1.0 / c), sum = 0.0;
     for (size_t j = 0; j < modes->chains; j++) modes->slowest[j] = s * exp2((double)j / chains);
-    for (modes->n = 0; modes->n < CE_MODES && sum < 1.0 - 1e-6; modes->n++)
+    for (modes->n = 0; modes->n < CE_MODES && sum < 1.0 - 2e-4; modes->n++)
         for (size_t j = 0; j < modes->chains; j++, z *= ratio)
             sum += modes->weight[j][modes->n] = step * density(a, c, z);
     modes->weight[modes->chains - 1][modes->n - 1] += 1.0 - sum;
@@ -48,23 +48,25 @@ typedef struct {
 /* (rate of the scan) * tau, K. */
 static double theta(const ce_relax *r, double T, double tf)
 {
-    const double e =
-        r->x * (1.0 / T - 1.0 / r->tr_K) + (1.0 - r->x) * (1.0 / tf - 1.0 / r->tr_K);
+    const double e = r->x * (1.0 / T - 1.0 / r->tr_K) + (1.0 - r->x) * (1.0 / tf - 1.0 / r->tr_K);
     return r->tr_K * r->tr_K / r->h_K * exp(fmin(r->h_K * e, 600.0));
 }
 
-/* One chain of modes over a step; returns its share of the lag. */
+/* One chain of modes over a step; returns its share of the lag. What is gone after a step goes from
+ * mode to mode by 1 - E_{k+1} = 1 - E_k^2; the fastest modes follow at once. */
 static double decay(double *u, const double *weight, size_t n, double rate, double dT, double dt)
 {
-    double done[CE_MODES], gone = -expm1(-dt * rate);
-    for (size_t k = 0; k < n; k++) { /* 1 - E_{k+1} = 1 - E_k^2 */
-        done[k] = gone;
+    double lag = 0.0, steady = dT / dt / rate, gone = -expm1(-dt * rate);
+    size_t k = 0;
+    for (; k < n && gone < 1.0 - 1e-9; k++) {
+        u[k] += (steady - u[k]) * gone;
+        lag += weight[k] * u[k];
+        steady *= 0.5;
         gone *= 2.0 - gone;
     }
-    double lag = 0.0, steady = dT / dt / rate;
-    for (size_t k = 0; k < n; k++) {
-        u[k] += (steady - u[k]) * done[k];
-        lag += weight[k] * u[k];
+    for (; k < n; k++) {
+        u[k] = steady;
+        lag += weight[k] * steady;
         steady *= 0.5;
     }
     return lag;
@@ -80,8 +82,10 @@ static void advance(state *s, double dT, double dt)
     double lag = 0.0;
     for (size_t j = 0; j < r->modes.chains; j++)
         lag += decay(s->u[j], r->modes.weight[j], r->modes.n, r->modes.slowest[j] / th, dT, dt);
-    if (dT == 0.0) s->slope = 0.0;
-    else if (fabs(dT) > 1e-5) s->slope = 1.0 - (lag - s->lag) / dT; /* else rounding errors */
+    if (dT == 0.0)
+        s->slope = 0.0;
+    else if (fabs(dT) > 1e-5)
+        s->slope = 1.0 - (lag - s->lag) / dT; /* else rounding errors */
     s->T += dT;
     s->lag = lag;
 }

@@ -29,17 +29,18 @@ typedef struct {
 } ce_modes;
 
 typedef struct {
-    double tr_K;      /* reference temperature of the transition                                */
-    double h_K;       /* activation enthalpy over the gas constant                              */
-    double beta;      /* stretching exponent, 0 < beta < 1                                      */
-    double x;         /* Narayanaswamy's partition parameter, 0 < x <= 1                        */
-    double cooling;   /* rate of the cooling before, over the rate of the scan                  */
-    double age_K;     /* time of annealing times the rate of the scan, K; 0 = none              */
-    double age_at_K;  /* temperature of annealing                                               */
-    double lag_K;     /* instrument: first-order lag times the rate of the scan; 0 = none       */
-    double fine_at_K; /* where the integration takes its finest steps, and these; both fixed       */
-    double fine_K;    /* during a fit, so that the curve is smooth in the parameters             */
-    ce_modes modes;   /* set by ce_relax_modes() from beta                                      */
+    double tr_K;     /* reference temperature of the transition                                */
+    double h_K;      /* activation enthalpy over the gas constant                              */
+    double beta;     /* stretching exponent, 0 < beta < 1                                      */
+    double x;        /* Narayanaswamy's partition parameter, 0 < x <= 1                        */
+    double cooling;  /* rate of the cooling before, over the rate of the scan                  */
+    double age_K;    /* time of annealing times the rate of the scan, K; 0 = none              */
+    double age_at_K; /* temperature of annealing                                               */
+    double lag_K;    /* instrument: first-order lag times the rate of the scan; 0 = none       */
+    double
+        fine_at_K;  /* where the integration takes its finest steps, and these; both fixed       */
+    double fine_K;  /* during a fit, so that the curve is smooth in the parameters             */
+    ce_modes modes; /* set by ce_relax_modes() from beta                                      */
 } ce_relax;
 
 /* Fill in the modes for a stretching exponent. */

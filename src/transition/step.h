@@ -40,16 +40,16 @@ enum { CE_SHAPES = 9, CE_LINEAR = 6, CE_FREE = CE_SHAPES + CE_LINEAR };
 /* The fitted model: Cp-like signal = glass line + step * (step height along Tf) + start-up. */
 typedef struct {
     bool cooling, curved;
-    bool aged;                 /* annealing and instrument lag are fitted too                   */
-    double ref_K;              /* origin of the lines                                           */
-    double fine_K;             /* step of the integration near the transition                   */
-    double hook_from_K;        /* where the segment starts                                      */
-    double shape[CE_SHAPES];   /* see model.c                                                   */
+    bool aged;               /* annealing and instrument lag are fitted too                   */
+    double ref_K;            /* origin of the lines                                           */
+    double fine_K;           /* step of the integration near the transition                   */
+    double hook_from_K;      /* where the segment starts                                      */
+    double shape[CE_SHAPES]; /* see model.c                                                   */
     double linear[CE_LINEAR];
-    double centre[CE_SHAPES];  /* of the prior                                                  */
-    double sigma;              /* sd of a recorded point, for the weights                       */
-    double total;              /* chi-square with that of the priors                            */
-    double misfit;             /* reduced chi-square against sigma                              */
+    double centre[CE_SHAPES]; /* of the prior                                                  */
+    double sigma;             /* sd of a recorded point, for the weights                       */
+    double total;             /* chi-square with that of the priors                            */
+    double misfit;            /* reduced chi-square against sigma                              */
     double cov[CE_FREE][CE_FREE]; /* of shape and linear parameters at sigma                    */
     size_t iterations;
 } ce_model;
@@ -79,8 +79,7 @@ void ce_design_free(ce_design *design);
  * the model as it comes in. design may be NULL. CE_OK | CE_E_NOFIT | CE_E_NOMEM. */
 ce_status ce_model_fit(const ce_cells *cells, double step, ce_model *model, ce_design *design);
 /* First-order change of all parameters when each cell's weight is multiplied by share[cell]. */
-ce_status ce_model_reweigh(const ce_model *model, const ce_design *design, const double *share,
-                           double shift[CE_FREE]);
+ce_status ce_model_reweigh(const ce_design *design, const double *share, double shift[CE_FREE]);
 /* A first guess for a step of this half-step temperature and width; sigma > 0. */
 ce_model ce_model_start(bool cooling, double centre_K, double width_K, double sigma,
                         double hook_from_K);

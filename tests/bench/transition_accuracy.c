@@ -16,8 +16,8 @@
 #include <time.h>
 
 enum { CLASSES = 6, TG = 370 };
-static const char *const class_name[CLASSES] = {"sharp",      "sharp noisy",      "sharp aged",
-                                                "broad",      "broad noisy",      "broad aged"};
+static const char *const class_name[CLASSES] = {"sharp", "sharp noisy", "sharp aged",
+                                                "broad", "broad noisy", "broad aged"};
 
 typedef struct {
     uint64_t state;
@@ -48,8 +48,7 @@ typedef struct {
 static void draw_glass(draws *d, bool judge, ce_glass *g, bool *broad)
 {
     static const char *const names[] = {"ps", "pvac", "pmma", "pvc", "pc"};
-    const ce_glass_set *set =
-        ce_glass_set_find(names[(size_t)uniform(d, 0.0, judge ? 5.0 : 4.0)]);
+    const ce_glass_set *set = ce_glass_set_find(names[(size_t)uniform(d, 0.0, judge ? 5.0 : 4.0)]);
     const double wide = judge ? 1.5 : 1.0;
     g->h_K = set->h_K * exp(wide * uniform(d, -0.1, 0.1));
     g->ln_a = set->ln_a;
@@ -97,11 +96,12 @@ static outcome one(uint64_t seed, bool judge, double *seconds)
     i->transient_s = uniform(&d, 5.0, 20.0);
     i->lag_s = uniform(&d, 0.0, 1.0) < 0.5 ? uniform(&d, 1.0, 4.0) : 0.0;
     c.seed = seed;
-    (void)snprintf(out.what, sizeof out.what,
-                   "seed %llu h %.0f x %.2f beta %.2f q %.0f cool %.0f age %.0f noise %.4f lag %.1f "
-                   "spacing %.2f",
-                   (unsigned long long)seed, c.glass[0].h_K, c.glass[0].x, c.glass[0].beta, q, cool,
-                   c.programme.prior_age_s, i->noise_mW / step_mW, i->lag_s, spacing);
+    (void)snprintf(
+        out.what, sizeof out.what,
+        "seed %llu h %.0f x %.2f beta %.2f q %.0f cool %.0f age %.0f noise %.4f lag %.1f "
+        "spacing %.2f",
+        (unsigned long long)seed, c.glass[0].h_K, c.glass[0].x, c.glass[0].beta, q, cool,
+        c.programme.prior_age_s, i->noise_mW / step_mW, i->lag_s, spacing);
     ce_simulation *s = NULL;
     ce_run *run = NULL;
     ce_transitions found = {0};
@@ -114,10 +114,6 @@ static outcome one(uint64_t seed, bool judge, double *seconds)
     const clock_t start = clock();
     if (st == CE_OK) st = ce_transition_find(run, NULL, &found, &err);
     *seconds += (double)(clock() - start) / CLOCKS_PER_SEC;
-    if (getenv("DUMP") != NULL && s != NULL)
-        for (size_t k = 0; k < ce_simulation_size(s); k++)
-            printf("D %.4f %.6f\n", ce_simulation_temperature_K(s)[k],
-                   ce_simulation_signal_mW(s)[k] / step_mW);
     if (st != CE_OK) {
         out.refused = true;
         (void)fprintf(stderr, "%s: %s\n", out.what, err.message);
@@ -178,9 +174,7 @@ int main(int argc, char **argv)
     if (o == NULL || n == 0) return 3;
     double seconds = 0.0;
     size_t refused = 0;
-    const char *only = getenv("ONLY");
     for (size_t i = 0; i < n; i++) {
-        if (only != NULL && i + 1 != strtoul(only, NULL, 10)) continue;
         o[i] = one(i + 1, judge, &seconds);
         refused += o[i].refused;
     }
