@@ -364,6 +364,15 @@ static bool follows(const by_windows *s, const by_model *f, double rough)
            f->p.step < 2.0 * s->p.step;
 }
 
+/* Windows that are straight to a few ten-thousandths of the step, where the noise lets that be seen:
+ * no tail of the step is in them and nothing has to be extrapolated by a model. */
+static bool straight(const by_windows *s)
+{
+    const double limit = 2e-4 * s->p.step;
+    return s->curve->noise < 5e-4 * s->p.step && fabs(s->g.bend) < limit &&
+           fabs(s->l.bend) < limit && s->g.sd < limit && s->l.sd < limit;
+}
+
 /* The model's lines and constructions, where it follows the curve; CE_E_NOFIT where it does not. */
 static ce_status take_model(const by_windows *s, const ce_transition_options *o, ce_finding *out)
 {
@@ -382,6 +391,11 @@ static ce_status take_model(const by_windows *s, const ce_transition_options *o,
         else
             st = model_uncertainty(s, &f, m, o, out);
         if (st == CE_OK) {
+            /* where it follows loosely, the windows' word counts too */
+            const double doubt = clamp(rough / most_rough, 0.0, 1.0);
+            for (int k = 0; k < CE_CONSTRUCTIONS && rough > 0.2 * most_rough; k++)
+                if (isfinite(s->p.at[k]))
+                    out->u_window[k] = hypot(out->u_window[k], doubt * (f.p.at[k] - s->p.at[k]));
             out->points = f.p;
             out->lines = f.lines;
             out->rough = rough;
@@ -498,7 +512,8 @@ ce_status ce_read_step(const ce_curve *curve, const ce_place *place, ce_window e
         out->glass = s.glass;
         out->liquid = s.liquid;
         out->noise = curve->noise;
-        st = isnan(o->glass.low_K) && isnan(o->liquid.low_K) ? take_model(&s, o, out) : CE_E_NOFIT;
+        const bool given = !isnan(o->glass.low_K) || !isnan(o->liquid.low_K);
+        st = given || straight(&s) ? CE_E_NOFIT : take_model(&s, o, out);
         if (st == CE_E_NOMEM)
             (void)ce_fail(err, st, "out of memory");
         else {

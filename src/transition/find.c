@@ -87,11 +87,11 @@ typedef struct {
     double score;
 } findings;
 
-/* Above some 180 degC decomposition and its steps become likelier than a glass transition; the
- * evidence there counts less (common practice: look below first). */
+/* The hotter, the likelier is a step one of decomposition; evidence there counts less (common
+ * practice: look below first). */
 static void prefer_low(ce_finding *f)
 {
-    f->strength /= 1.0 + fmax(f->points.at[CE_HALF_STEP] - 450.0, 0.0) / 50.0;
+    f->strength /= 1.0 + fmax(f->points.at[CE_HALF_STEP] - 400.0, 0.0) / 100.0;
 }
 
 static int stronger(const void *a, const void *b)

@@ -99,7 +99,9 @@ static ce_place look(const grid *g, double T, double gap, double plausible)
                         gap * fmax(left.slope, right.slope);
     if (!(step > 0.0) || !(rise > 0.25 * step)) return none;
     const double bend = fabs(right.slope - left.slope) * (len + gap);
-    const double scatter = g->noise + 2.0 * (s1 + s2) + 0.08 * bend + 0.005 * step;
+    /* on a perfect line the last digits would make steps */
+    const double climb = (fabs(left.slope) + fabs(right.slope)) * (len + gap);
+    const double scatter = g->noise + 2.0 * (s1 + s2) + 0.08 * bend + 0.005 * step + 1e-3 * climb;
     const double excess = fmax(step / plausible, 1.0);
     return (ce_place){.low_K = T - half,
                       .high_K = T + half,
