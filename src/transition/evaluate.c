@@ -364,13 +364,23 @@ static bool follows(const by_windows *s, const by_model *f, double rough)
            f->p.step < 2.0 * s->p.step;
 }
 
-/* Windows that are straight to a few ten-thousandths of the step, where the noise lets that be seen:
- * no tail of the step is in them and nothing has to be extrapolated by a model. */
-static bool straight(const by_windows *s)
+/* Windows, a step width farther off, that are straight to a few ten-thousandths of the step where
+ * the noise lets that be seen: no tail of the step is in them, and nothing has to be extrapolated by
+ * a model. They are taken then. */
+static bool straight(by_windows *s)
 {
+    by_windows off = *s;
     const double limit = 2e-4 * s->p.step;
-    return s->curve->noise < 5e-4 * s->p.step && fabs(s->g.bend) < limit &&
-           fabs(s->l.bend) < limit && s->g.sd < limit && s->l.sd < limit;
+    off.glass.high_K -= s->width;
+    off.liquid.low_K += s->width;
+    if (s->curve->noise > 0.5 * limit || off.glass.high_K - off.glass.low_K < 8.0 ||
+        off.liquid.high_K - off.liquid.low_K < 8.0 || !fit_windows(&off))
+        return false;
+    if (fabs(off.g.bend) > limit || fabs(off.l.bend) > limit || off.g.sd > limit ||
+        off.l.sd > limit)
+        return false;
+    *s = off;
+    return true;
 }
 
 /* The model's lines and constructions, where it follows the curve; CE_E_NOFIT where it does not. */
@@ -509,8 +519,6 @@ ce_status ce_read_step(const ce_curve *curve, const ce_place *place, ce_window e
         out->range.low_K = fmax(edge.low_K, curve->T[0] + 1.0);
         out->range.high_K = ce_reach(curve, s.liquid.low_K, s.liquid.high_K,
                                      fmin(edge.high_K, curve->T[curve->n - 1] - 1.5), tolerance);
-        out->glass = s.glass;
-        out->liquid = s.liquid;
         out->noise = curve->noise;
         const bool given = !isnan(o->glass.low_K) || !isnan(o->liquid.low_K);
         st = given || straight(&s) ? CE_E_NOFIT : take_model(&s, o, out);
@@ -519,6 +527,8 @@ ce_status ce_read_step(const ce_curve *curve, const ce_place *place, ce_window e
         else {
             if (st != CE_OK) take_windows(&s, o, out);
             st = CE_OK;
+            out->glass = s.glass;
+            out->liquid = s.liquid;
             survey(&s, out);
             out->strength = place->score / fmax(1.0, out->rough / 0.01);
         }

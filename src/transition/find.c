@@ -8,6 +8,7 @@
 
 enum { MOST_TRANSITIONS = 6, LEAST_POINTS = 24 };
 static const double least_range_K = 20.0;
+static const double least_share = 0.1; /* of the strongest step, for a further one            */
 /* The sanity band of a step: 0.15 to 0.65 J/(g K) for an amorphous polymer (ATHAS-type values, from
  * memory); a larger one than this is a sign of another event. */
 static const double plausible_J_gK = 0.8;
@@ -103,7 +104,8 @@ static int stronger(const void *a, const void *b)
 /* A further transition must be as clean as a first one: peaks and bends look like small steps. */
 static bool another(const ce_finding *f, const ce_finding *strongest)
 {
-    return f->strength > 6.0 && f->rough < 0.03 && f->points.step > 0.1 * strongest->points.step &&
+    return f->strength > 6.0 && f->rough < 0.03 &&
+           f->points.step > least_share * strongest->points.step &&
            fabs(f->points.at[CE_HALF_STEP] - strongest->points.at[CE_HALF_STEP]) > 8.0;
 }
 
@@ -122,6 +124,10 @@ static ce_status find_places(const ce_run *run, const ce_segment *s, const ce_cu
                        "no step in segment %zu: one of %.2g %s would have been seen", s->index,
                        detectable * (isnan(factor) ? 1.0 : factor),
                        isnan(factor) ? ce_signal_unit(ce_run_signal_kind(run)) : "J/(g K)");
+    size_t real = 0; /* last digits and ripples must not fence in the step                     */
+    for (size_t i = 0; i < n; i++)
+        if (place[i].step >= least_share * place[0].step) place[real++] = place[i];
+    n = real;
     ce_finding f[MOST_TRANSITIONS];
     size_t kept = 0;
     ce_error first = CE_ERROR_INIT;
