@@ -9,6 +9,7 @@
 
 enum { TRACE = 600 };
 static const double most_rough = 0.03;       /* what a model may leave over of a step           */
+static const double straight_glass_K = 60.0; /* a glass line is no line over much more            */
 static const double least_baseline_K = 10.0; /* beside the step, else the run cuts it off       */
 static const double inexact_start = 0.02;    /* and of a start-up, relative */
 static const double inexact_steps = 1e-3; /* what the model may miss of a step, any cell        */
@@ -516,7 +517,8 @@ ce_status ce_read_step(const ce_curve *curve, const ce_place *place, ce_window e
     ce_status st = settle_windows(&s, place, o, err);
     if (st == CE_OK) {
         const double tolerance = fmax(0.08 * s.p.step, 4.0 * curve->noise);
-        out->range.low_K = fmax(edge.low_K, curve->T[0] + 1.0);
+        out->range.low_K = fmax(fmax(edge.low_K, curve->T[0] + 1.0),
+                                s.glass.high_K - fmax(straight_glass_K, 5.0 * s.width));
         out->range.high_K = ce_reach(curve, s.liquid.low_K, s.liquid.high_K,
                                      fmin(edge.high_K, curve->T[curve->n - 1] - 1.5), tolerance);
         out->noise = curve->noise;
