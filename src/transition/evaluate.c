@@ -317,11 +317,11 @@ static ce_status window_part(const by_model *f, double sum[CE_CONSTRUCTIONS + 2]
     return st;
 }
 
-/* What histories that fit equally well leave open, K for a step 10 K wide, growing with the square
- * of the width; from the tuning half of tests/bench/transition_accuracy. */
+/* What histories that fit equally well leave open, K for a step 10 K wide, growing with the cube of
+ * the width; from the tuning half of tests/bench/transition_accuracy. */
 static const double model_part[CE_CONSTRUCTIONS] = {
-    [CE_ONSET] = 0.10,      [CE_MIDPOINT] = 0.07, [CE_HALF_STEP] = 0.08,
-    [CE_INFLECTION] = 0.04, [CE_END] = 0.03,      [CE_FICTIVE] = 0.40};
+    [CE_ONSET] = 0.08,      [CE_MIDPOINT] = 0.06, [CE_HALF_STEP] = 0.07,
+    [CE_INFLECTION] = 0.04, [CE_END] = 0.02,      [CE_FICTIVE] = 0.33};
 
 static ce_status model_uncertainty(const by_windows *s, by_model *f, modelling *m,
                                    const ce_transition_options *o, ce_finding *out)
@@ -330,7 +330,7 @@ static ce_status model_uncertainty(const by_windows *s, by_model *f, modelling *
     if (!gradients(f, m)) return CE_E_NOFIT;
     if (o->ensemble && window_part(f, sum) == CE_E_NOMEM) return CE_E_NOMEM;
     const double least = 0.01 * s->curve->spacing + 1e-3;
-    const double broad = s->width * s->width / 100.0 * (f->model.aged ? 1.5 : 1.0);
+    const double broad = pow(s->width / 10.0, 3.0) * (f->model.aged ? 1.5 : 1.0);
     for (int k = 0; k < CE_CONSTRUCTIONS; k++) {
         out->u_noise[k] = hypot(sqrt(variance(f, (size_t)k)), least);
         out->u_window[k] = hypot(sqrt(sum[k]), model_part[k] * broad);
@@ -397,9 +397,13 @@ static ce_status take_model(const by_windows *s, const ce_transition_options *o,
     }
     if (st == CE_OK) {
         const double rough = roughness(s, &f);
-        if (!follows(s, &f, rough))
+        if (!follows(s, &f, rough)) {
+            for (int k = 0; k < CE_CONSTRUCTIONS; k++) {
+                const double off = fabs(f.p.at[k] - s->p.at[k]);
+                out->u_window[k] = isfinite(off) ? 0.3 * fmin(off, 2.0 * s->width) : 0.0;
+            }
             st = CE_E_NOFIT;
-        else
+        } else
             st = model_uncertainty(s, &f, m, o, out);
         if (st == CE_OK) {
             /* where it follows loosely, the windows' word counts too */
@@ -469,7 +473,7 @@ static void window_ensemble(const by_windows *s, ce_finding *out)
         used += 1.0;
     }
     for (int i = 0; i < CE_CONSTRUCTIONS; i++)
-        out->u_window[i] = used > 0.0 ? sqrt(2.0 * sum[i] / used) : 0.0;
+        out->u_window[i] = hypot(out->u_window[i], used > 0.0 ? sqrt(2.0 * sum[i] / used) : 0.0);
     out->step_u = hypot(out->step_u, used > 0.0 ? sqrt(2.0 * step / used) : 0.0);
 }
 

@@ -8,7 +8,8 @@
 
 enum { MOST_TRANSITIONS = 6, LEAST_POINTS = 24 };
 static const double least_range_K = 20.0;
-static const double least_share = 0.1; /* of the strongest step, for a further one            */
+static const double least_strength = 1.5; /* of the evidence for a step                       */
+static const double least_share = 0.1;    /* of the strongest step, for a further one            */
 /* The sanity band of a step: 0.15 to 0.65 J/(g K) for an amorphous polymer (ATHAS-type values, from
  * memory); a larger one than this is a sign of another event. */
 static const double plausible_J_gK = 0.8;
@@ -63,6 +64,9 @@ static ce_transition present(const ce_run *run, const ce_segment *s, const ce_cu
         t.tg[k] = (ce_reading){f->points.at[k], hypot(f->u_noise[k], f->u_window[k]), f->u_noise[k],
                                f->u_window[k]};
     ce_flag_finding(f, &t);
+    const double half = f->points.at[CE_HALF_STEP];
+    if (t.windows_given && !(t.glass.high_K < half && half < t.liquid.low_K))
+        ce_add_flag(&t, CE_FLAG_NO_OVERLAP, half);
     if (!isnan(factor) && (t.step_height < 0.15 || t.step_height > 0.65))
         ce_add_flag(&t, CE_FLAG_STEP_IMPLAUSIBLE, t.step_height);
     return t;
@@ -146,6 +150,11 @@ static ce_status find_places(const ce_run *run, const ce_segment *s, const ce_cu
     }
     qsort(f, kept, sizeof *f, stronger);
     found->score = f[0].strength;
+    if (!(f[0].strength > least_strength))
+        return ce_fail(err, CE_E_REFUSED,
+                       "no step in segment %zu: the best candidate, at %.1f °C, leaves as much "
+                       "unexplained as it explains",
+                       s->index, f[0].points.at[CE_HALF_STEP] - 273.15);
     for (size_t i = 0; i < kept && found->n < MOST_TRANSITIONS; i++)
         if (i == 0 || another(&f[i], &f[0])) found->item[found->n++] = present(run, s, c, o, &f[i]);
     return CE_OK;

@@ -42,6 +42,7 @@ typedef struct {
     int class;
     double error[CE_CONSTRUCTIONS], u[CE_CONSTRUCTIONS];
     bool refused;
+    double ms;
     char what[200];
 } outcome;
 
@@ -64,7 +65,7 @@ static void draw_glass(draws *d, bool judge, ce_glass *g, bool *broad)
     *broad = g->beta < 0.42;
 }
 
-static outcome one(uint64_t seed, bool judge, double *seconds)
+static outcome one(uint64_t seed, bool judge)
 {
     draws d = {seed * 7919u + (judge ? 1000003u : 17u)};
     ce_simulation_config c = ce_simulation_config_default();
@@ -113,7 +114,7 @@ static outcome one(uint64_t seed, bool judge, double *seconds)
                                 CE_SIGNAL_POWER, i->mass_g, (double)NAN, &run, &err);
     const clock_t start = clock();
     if (st == CE_OK) st = ce_transition_find(run, NULL, &found, &err);
-    *seconds += (double)(clock() - start) / CLOCKS_PER_SEC;
+    out.ms = 1000.0 * (double)(clock() - start) / CLOCKS_PER_SEC;
     if (st != CE_OK) {
         out.refused = true;
         (void)fprintf(stderr, "%s: %s\n", out.what, err.message);
@@ -158,6 +159,17 @@ static void put_row(const outcome *o, size_t n, int k, int class)
     free(v);
 }
 
+static double quantile_of_ms(const outcome *o, size_t n, double p)
+{
+    double *v = calloc(n, sizeof *v);
+    if (v == NULL) return (double)NAN;
+    for (size_t i = 0; i < n; i++) v[i] = o[i].ms;
+    qsort(v, n, sizeof *v, rising);
+    const double q = v[(size_t)(p * (double)(n - 1))];
+    free(v);
+    return q;
+}
+
 static int worse(const void *a, const void *b)
 {
     const double x = fabs(((const outcome *)a)->error[CE_HALF_STEP]),
@@ -172,15 +184,16 @@ int main(int argc, char **argv)
     const size_t worst = argc > 3 ? strtoul(argv[3], NULL, 10) : 0;
     outcome *o = calloc(n, sizeof *o);
     if (o == NULL || n == 0) return 3;
-    double seconds = 0.0;
     size_t refused = 0;
     for (size_t i = 0; i < n; i++) {
-        o[i] = one(i + 1, judge, &seconds);
+        o[i] = one(i + 1, judge);
         refused += o[i].refused;
     }
-    printf("%s half: %zu runs, %zu refused, %.2f ms a run\n%-12s%-14s%5s%9s%9s%9s%9s%11s\n",
-           judge ? "judging" : "tuning", n, refused, 1000.0 * seconds / (double)n, "construction",
-           "class", "n", "bias", "median", "95 %", "largest", "rms err/u");
+    printf("%s half: %zu runs, %zu refused, median %.1f ms, 95 %% %.1f ms a "
+           "run\n%-12s%-14s%5s%9s%9s%9s%9s%11s\n",
+           judge ? "judging" : "tuning", n, refused, quantile_of_ms(o, n, 0.5),
+           quantile_of_ms(o, n, 0.95), "construction", "class", "n", "bias", "median", "95 %",
+           "largest", "rms err/u");
     for (int k = 0; k < CE_CONSTRUCTIONS; k++)
         for (int c = 0; c < CLASSES; c++) put_row(o, n, k, c);
     qsort(o, n, sizeof *o, worse);
