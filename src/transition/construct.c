@@ -100,8 +100,9 @@ bool ce_construct(const ce_trace *t, const ce_lines *l, double area_K, ce_points
     size_t low = after, high = after, top = after;
     while (low > 1 && height(t, l, low - 1) > 0.1) low--;
     while (high + 1 < t->n && height(t, l, high) < 0.9) high++;
+    const double farthest = t->T[high] + 1.5 * (t->T[high] - t->T[low - 1]);
     while (top + 1 < t->n && (height(t, l, top) < 0.8 || t->y[top + 1] > t->y[top]) &&
-           t->T[top] < half + 60.0)
+           t->T[top] < farthest)
         top++;
     p->low_K = t->T[low - 1];
     p->high_K = t->T[high];

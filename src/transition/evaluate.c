@@ -365,16 +365,16 @@ static bool follows(const by_windows *s, const by_model *f, double rough)
            f->p.step < 2.0 * s->p.step;
 }
 
-/* Windows, a step width farther off, that are straight to a few ten-thousandths of the step where
+/* Windows, a step width farther off, that are straight to some hundred-thousandths of the step where
  * the noise lets that be seen: no tail of the step is in them, and nothing has to be extrapolated by
  * a model. They are taken then. */
 static bool straight(by_windows *s)
 {
     by_windows off = *s;
-    const double limit = 2e-4 * s->p.step;
+    const double limit = 5e-5 * s->p.step;
     off.glass.high_K -= s->width;
     off.liquid.low_K += s->width;
-    if (s->curve->noise > 0.5 * limit || off.glass.high_K - off.glass.low_K < 8.0 ||
+    if (s->curve->noise > limit || off.glass.high_K - off.glass.low_K < 8.0 ||
         off.liquid.high_K - off.liquid.low_K < 8.0 || !fit_windows(&off))
         return false;
     if (fabs(off.g.bend) > limit || fabs(off.l.bend) > limit || off.g.sd > limit ||

@@ -1,1 +1,1 @@
-ce_unit_test(transition find construct relax)
+ce_unit_test(transition find construct relax invariance)
