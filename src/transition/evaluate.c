@@ -245,6 +245,30 @@ static ce_status try_model(by_model *f, double step, ce_model next, ce_status so
     return st == CE_E_NOMEM ? st : so_far;
 }
 
+/* One history after the other until one does: cooled at the rate of the scan, slower, faster;
+ * annealed, from the best of these and afresh. */
+static ce_status try_histories(by_model *f, double step, const ce_model *start)
+{
+    static const double cooled[] = {0.0, 2.0, -2.0};
+    const double good = 1.15 * expected_misfit(&f->cells, start->sigma) + 0.9;
+    ce_status st = CE_E_NOFIT;
+    for (size_t k = 0; k < sizeof cooled / sizeof *cooled; k++) {
+        ce_model next = *start;
+        ce_model_cooled(&next, cooled[k]);
+        st = try_model(f, step, next, st);
+        if (st == CE_E_NOMEM || start->cooling || (st == CE_OK && f->model.misfit < good))
+            return st;
+    }
+    for (int k = 0; k < 3; k++) {
+        ce_model next = k == 0 && st == CE_OK ? f->model : *start;
+        if (k == 2) ce_model_cooled(&next, 1.5);
+        next.aged = true;
+        st = try_model(f, step, next, st);
+        if (st == CE_E_NOMEM || (st == CE_OK && f->model.misfit < good)) return st;
+    }
+    return st;
+}
+
 static ce_status fit_model(const by_windows *s, ce_window range, by_model *f)
 {
     const ce_curve *c = s->curve;
@@ -256,25 +280,7 @@ static ce_status fit_model(const by_windows *s, ce_window range, by_model *f)
     ce_status st = ce_cells_make(c, range.low_K, range.high_K, centre, fine, &f->cells);
     if (st != CE_OK) return st;
     weigh_cells(s, &f->cells);
-    const double good = 1.15 * expected_misfit(&f->cells, start.sigma) + 0.9;
-    /* one history after the other until one does: cooled at the rate of the scan, slower, faster;
-     * annealed or seen through a lag, from the best of these and afresh */
-    static const double cooled[] = {0.0, 2.0, -2.0};
-    st = CE_E_NOFIT;
-    for (size_t k = 0; k < sizeof cooled / sizeof *cooled; k++) {
-        ce_model next = start;
-        ce_model_cooled(&next, cooled[k]);
-        st = try_model(f, s->p.step, next, st);
-        if (st == CE_E_NOMEM || c->cooling || (st == CE_OK && f->model.misfit < good)) return st;
-    }
-    for (int k = 0; k < 3; k++) {
-        ce_model next = k == 0 && st == CE_OK ? f->model : start;
-        if (k == 2) ce_model_cooled(&next, 1.5);
-        next.aged = true;
-        st = try_model(f, s->p.step, next, st);
-        if (st == CE_E_NOMEM || (st == CE_OK && f->model.misfit < good)) return st;
-    }
-    return st;
+    return try_histories(f, s->p.step, &start);
 }
 
 static double variance(const by_model *f, size_t quantity)

@@ -9,19 +9,20 @@ static const double pi = 3.14159265358979323846;
 /* The distribution of rates is that of S with E exp(-t S) = exp(-t^beta), the one-sided stable law:
  * S = (a(U)/W)^((1-beta)/beta), U uniform on (0, pi), W exponential (Kanter, Ann. Probab. 3 (1975)
  * 697, from memory). With z = S^(-beta/(1-beta)) the density of ln S is c E[a z exp(-a z)]. */
-static double density(const double a[ANGLES], double c, double z)
+static double density(const double a[ANGLES], const double w[ANGLES], double c, double z)
 {
     double sum = 0.0;
-    for (int i = 0; i < ANGLES; i++) sum += a[i] * exp(-a[i] * z);
-    return c * z * sum / ANGLES;
+    for (int i = 0; i < ANGLES; i++) sum += w[i] * a[i] * exp(-a[i] * z);
+    return c * z * sum;
 }
 
 void ce_relax_modes(double beta, ce_modes *modes)
 {
-    double a[ANGLES];
+    double a[ANGLES], w[ANGLES]; /* dense towards pi, where a() runs off to infinity          */
     const double c = beta / (1.0 - beta);
     for (int i = 0; i < ANGLES; i++) {
-        const double u = pi * (i + 0.5) / ANGLES;
+        const double v = 1.0 - (i + 0.5) / ANGLES, u = pi * (1.0 - v * v * v * v);
+        w[i] = 4.0 * v * v * v / (ANGLES - 0.5 / ANGLES); /* their sum is 1                    */
         a[i] = pow(sin(beta * u) / sin(u), c) * sin((1.0 - beta) * u) / sin(u);
     }
     /* The density has the width 1/c in ln S: the closer to a single exponential, the denser. Some
@@ -31,9 +32,9 @@ void ce_relax_modes(double beta, ce_modes *modes)
     const double least = (1.0 - beta) * pow(beta, c), step = log(2.0) / chains;
     double z = 9.0 / least, s = pow(z, -1.0 / c), sum = 0.0;
     for (size_t j = 0; j < modes->chains; j++) modes->slowest[j] = s * exp2((double)j / chains);
-    for (modes->n = 0; modes->n < CE_MODES && sum < 1.0 - 2e-4; modes->n++)
+    for (modes->n = 0; modes->n < CE_MODES && sum < 1.0 - 1e-4; modes->n++)
         for (size_t j = 0; j < modes->chains; j++, z *= ratio)
-            sum += modes->weight[j][modes->n] = step * density(a, c, z);
+            sum += modes->weight[j][modes->n] = step * density(a, w, c, z);
     modes->weight[modes->chains - 1][modes->n - 1] += 1.0 - sum;
 }
 
