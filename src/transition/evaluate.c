@@ -326,8 +326,8 @@ static ce_status window_part(const by_model *f, double sum[CE_CONSTRUCTIONS + 2]
 /* What histories that fit equally well leave open, K for a step 10 K wide, growing with the cube of
  * the width; from the tuning half of tests/bench/transition_accuracy. */
 static const double model_part[CE_CONSTRUCTIONS] = {
-    [CE_ONSET] = 0.08,      [CE_MIDPOINT] = 0.06, [CE_HALF_STEP] = 0.07,
-    [CE_INFLECTION] = 0.04, [CE_END] = 0.02,      [CE_FICTIVE] = 0.33};
+    [CE_ONSET] = 0.05,      [CE_MIDPOINT] = 0.04, [CE_HALF_STEP] = 0.045,
+    [CE_INFLECTION] = 0.03, [CE_END] = 0.02,      [CE_FICTIVE] = 0.2};
 
 static ce_status model_uncertainty(const by_windows *s, by_model *f, modelling *m,
                                    const ce_transition_options *o, ce_finding *out)
@@ -344,6 +344,27 @@ static ce_status model_uncertainty(const by_windows *s, by_model *f, modelling *
     out->step_u = sqrt(variance(f, CE_CONSTRUCTIONS) + sum[CE_CONSTRUCTIONS]);
     out->width_u = sqrt(variance(f, CE_CONSTRUCTIONS + 1) + sum[CE_CONSTRUCTIONS + 1]);
     return CE_OK;
+}
+
+/* What the curve says beyond the model: its residuals, smoothed over a small part of the step, as far
+ * as they stand out of the noise (shrunk after James and Stein). */
+static void correct(const by_windows *s, const by_model *f, modelling *m)
+{
+    const ce_cells *c = &f->cells;
+    const double half = fmax(0.08 * s->width, 1.5 * s->curve->spacing);
+    size_t a = 0;
+    for (size_t i = 0; i < m->n - FAR; i++) {
+        double w = 0.0, r = 0.0, v = 0.0;
+        while (a < c->n && c->T[a] < m->T[i] - half) a++;
+        for (size_t k = a; k < c->n && c->T[k] < m->T[i] + half; k++) {
+            const double near = 1.0 - fabs(c->T[k] - m->T[i]) / half;
+            const double noise = f->model.sigma * f->model.sigma / c->w[k];
+            w += near;
+            r += near * f->design.r[k] * hypot(sqrt(noise), c->sd[k]);
+            v += near * near * noise;
+        }
+        m->correction[i] = w > 0.0 && r != 0.0 ? r / w * fmax(0.0, 1.0 - 4.0 * v / (r * r)) : 0.0;
+    }
 }
 
 /* What the model leaves over around the step beyond the noise, r.m.s. in steps. */
@@ -399,6 +420,7 @@ static ce_status take_model(const by_windows *s, const ce_transition_options *o,
     if (st == CE_OK) {
         model_cells(m, s->p.at[CE_HALF_STEP], s->width);
         model_columns(&f.model, m);
+        correct(s, &f, m);
         if (!construct_model(&f.model, m, &f.lines, &f.p)) st = CE_E_NOFIT;
     }
     if (st == CE_OK) {
