@@ -1,8 +1,9 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later
  * How well the transition is read: simulated runs of known truth, two halves that share no draw.
  *
- *     transition_accuracy [tune|judge] [RUNS] [WORST]
+ *     transition_accuracy [tune|judge] [RUNS] [WORST] [FIRST]
  *
+ * FIRST is the number of the first run: from a number nobody has looked at, nobody has tuned on it.
  * Constants are chosen on "tune" only; "judge" has other seeds, other base glasses mixed in and wider
  * spreads. Prints, for each construction and class, the median, 95th percentile and largest absolute
  * error in kelvin and the r.m.s. of error over stated uncertainty, then the time a run takes. */
@@ -186,11 +187,12 @@ int main(int argc, char **argv)
     const bool judge = argc > 1 && strcmp(argv[1], "judge") == 0;
     const size_t n = argc > 2 ? strtoul(argv[2], NULL, 10) : 500;
     const size_t worst = argc > 3 ? strtoul(argv[3], NULL, 10) : 0;
+    const uint64_t first = argc > 4 ? strtoul(argv[4], NULL, 10) : 1;
     outcome *o = calloc(n, sizeof *o);
     if (o == NULL || n == 0) return 3;
     size_t refused = 0;
     for (size_t i = 0; i < n; i++) {
-        o[i] = one(i + 1, judge);
+        o[i] = one(first + i, judge);
         refused += o[i].refused;
     }
     printf("%s half: %zu runs, %zu refused, median %.1f ms, 95 %% %.1f ms a "
