@@ -8,7 +8,8 @@
 #include <string.h>
 
 enum { TRACE = 600 };
-static const double most_rough = 0.03;       /* what a model may leave over of a step           */
+static const size_t most_work = 60;    /* iterations after which no other history is tried    */
+static const double most_rough = 0.03; /* what a model may leave over of a step           */
 static const double straight_glass_K = 60.0; /* a glass line is no line over much more            */
 static const double least_baseline_K = 10.0; /* beside the step, else the run cuts it off       */
 static const double inexact_start = 0.02;    /* and of a start-up, relative */
@@ -144,6 +145,7 @@ typedef struct {
 
 typedef struct {
     ce_model model;
+    size_t work; /* iterations spent                                                            */
     ce_cells cells;
     ce_design design;
     ce_lines lines;
@@ -235,6 +237,7 @@ static ce_status try_model(by_model *f, double step, ce_model next, ce_status so
 {
     ce_design design = {0};
     const ce_status st = ce_model_fit(&f->cells, step, &next, &design);
+    f->work += next.iterations;
     if (st == CE_OK && (so_far != CE_OK || next.total < 0.9 * f->model.total)) {
         ce_design_free(&f->design);
         f->design = design;
@@ -252,14 +255,14 @@ static ce_status try_histories(by_model *f, double step, const ce_model *start)
     static const double cooled[] = {0.0, 2.0, -2.0};
     const double good = 1.15 * expected_misfit(&f->cells, start->sigma) + 0.9;
     ce_status st = CE_E_NOFIT;
-    for (size_t k = 0; k < sizeof cooled / sizeof *cooled; k++) {
+    for (size_t k = 0; k < sizeof cooled / sizeof *cooled && f->work < most_work / 2; k++) {
         ce_model next = *start;
         ce_model_cooled(&next, cooled[k]);
         st = try_model(f, step, next, st);
         if (st == CE_E_NOMEM || start->cooling || (st == CE_OK && f->model.misfit < good))
             return st;
     }
-    for (int k = 0; k < 3; k++) {
+    for (int k = 0; k < 3 && f->work < most_work; k++) {
         ce_model next = k == 0 && st == CE_OK ? f->model : *start;
         if (k == 2) ce_model_cooled(&next, 1.5);
         next.aged = true;
