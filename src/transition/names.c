@@ -49,7 +49,7 @@ static const struct {
     [CE_FLAG_STEP_IMPLAUSIBLE] =
         {"implausible step", "a step of %.3g J/(g K) is not that of an amorphous polymer: mass, "
                              "unit or sign?"},
-    [CE_FLAG_NO_OVERLAP] = {"no overlap", "the given windows do not enclose the step"},
+    [CE_FLAG_NO_OVERLAP] = {"no overlap", "the given windows do not enclose the step at %.1f K"},
 };
 
 const char *ce_flag_name(ce_flag_code code)

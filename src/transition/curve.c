@@ -1,0 +1,77 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+#include "transition/step.h"
+
+#include "base/order.h"
+
+#include <math.h>
+#include <stdlib.h>
+
+enum { MOST_CELLS = 4096, MOST_DIFFERENCES = 8192 };
+
+/* Second differences of white noise have six times its variance; the median looks past the step. */
+static double noise_of(const double *y, size_t n, double *scratch)
+{
+    const size_t stride = 1 + n / MOST_DIFFERENCES;
+    size_t k = 0;
+    double square = 0.0;
+    for (size_t i = 1; i + 1 < n && k < MOST_DIFFERENCES; i += stride, k++) {
+        scratch[k] = (y[i + 1] - 2.0 * y[i] + y[i - 1]) / sqrt(6.0);
+        square += scratch[k] * scratch[k];
+    }
+    const double rms = k > 0 ? sqrt(square / (double)k) : 0.0;
+    const double robust = CE_MAD_TO_SD * ce_mad(scratch, k);
+    return robust > 1e-3 * rms ? robust : rms; /* a coarse resolution makes most of them zero */
+}
+
+ce_status ce_curve_make(size_t n, const double *T, const double *y, bool cooling, ce_curve *curve)
+{
+    *curve = (ce_curve){.cooling = cooling};
+    const size_t cells = n < MOST_CELLS ? n : MOST_CELLS;
+    double *all = calloc(3 * cells + MOST_DIFFERENCES, sizeof *all);
+    if (all == NULL) return CE_E_NOMEM;
+    curve->T = all;
+    curve->y = all + cells;
+    curve->w = all + 2 * cells;
+    curve->noise = noise_of(y, n, all + 3 * cells);
+    double low = T[0], high = T[0];
+    for (size_t i = 1; i < n; i++) {
+        low = fmin(low, T[i]);
+        high = fmax(high, T[i]);
+    }
+    const double width = (high - low) / (double)cells, turn = cooling ? -1.0 : 1.0;
+    for (size_t i = 0; i < n && width > 0.0; i++) {
+        size_t k = (size_t)((T[i] - low) / width);
+        if (k >= cells) k = cells - 1;
+        curve->T[k] += T[i];
+        curve->y[k] += turn * y[i];
+        curve->w[k] += 1.0;
+    }
+    for (size_t k = 0; k < cells; k++) {
+        const double w = curve->w[k];
+        if (w <= 0.0) continue;
+        curve->T[curve->n] = curve->T[k] / w;
+        curve->y[curve->n] = curve->y[k] / w;
+        curve->w[curve->n++] = w;
+    }
+    curve->spacing = curve->n > 1 ? (high - low) / (double)(curve->n - 1) : 0.0;
+    return CE_OK;
+}
+
+void ce_curve_free(ce_curve *curve)
+{
+    free(curve->T);
+    *curve = (ce_curve){0};
+}
+
+size_t ce_curve_index(const ce_curve *curve, double T)
+{
+    size_t low = 0, high = curve->n;
+    while (low < high) {
+        const size_t mid = low + (high - low) / 2;
+        if (curve->T[mid] < T)
+            low = mid + 1;
+        else
+            high = mid;
+    }
+    return low;
+}
