@@ -23,6 +23,8 @@ static double to_heat_capacity(const ce_run *run, const ce_segment *s)
         return 1.0;
     case CE_SIGNAL_SPECIFIC_POWER:
         return per_s > 0.0 ? 1.0 / per_s : (double)NAN;
+    case CE_SIGNAL_UNSTATED:
+        return (double)NAN;
     case CE_SIGNAL_POWER:
         break;
     }
