@@ -2,6 +2,7 @@
 #include "cli/simulating.h"
 
 #include "base/quantity.h"
+
 #include "text/number.h"
 #include "text/value.h"
 
@@ -164,6 +165,17 @@ ce_status cli_add_hold(void *to, const char *value, ce_error *err)
     return st == CE_OK ? add_step(to, step, err) : st;
 }
 
+ce_status cli_set_prior_age(void *to, const char *value, ce_error *err)
+{
+    ce_programme *p = to;
+    char first[64];
+    const char *time;
+    if (!split(value, ':', first, &time))
+        return ce_fail(err, CE_E_SYNTAX, "'%.60s' is not T:TIME", value);
+    ce_status st = value_of(&p->prior_age_K, first, CE_DIM_TEMPERATURE, "degC", err);
+    return st == CE_OK ? value_of(&p->prior_age_s, time, CE_DIM_TIME, NULL, err) : st;
+}
+
 ce_status cli_add_peak(void *to, const char *value, ce_error *err)
 {
     ce_simulation_config *c = to;
@@ -217,23 +229,81 @@ ce_status cli_add_layouts(void *to, const char *value, ce_error *err)
     return CE_OK;
 }
 
+/* The layouts named so far, or the default one when none was. */
+#define FOR_LAYOUTS(l, to)                                                                         \
+    ensure_layout(to);                                                                             \
+    for (ce_layout *l = ((cli_simulating *)(to))->layout,                                          \
+                   *end_ = l + ((cli_simulating *)(to))->n_layouts;                                \
+         l < end_; l++)
+
 ce_status cli_set_last_heating_only(void *to, const char *value, ce_error *err)
 {
-    cli_simulating *s = to;
     (void)value;
     (void)err;
-    ensure_layout(s);
-    for (size_t i = 0; i < s->n_layouts; i++) s->layout[i].last_heating_only = true;
+    FOR_LAYOUTS(l, to) l->last_heating_only = true;
     return CE_OK;
 }
 
 ce_status cli_set_hidden_sign(void *to, const char *value, ce_error *err)
 {
-    cli_simulating *s = to;
     (void)value;
     (void)err;
-    ensure_layout(s);
-    for (size_t i = 0; i < s->n_layouts; i++) s->layout[i].state_sign = false;
+    FOR_LAYOUTS(l, to) l->state_sign = false;
+    return CE_OK;
+}
+
+ce_status cli_set_layout_sign(void *to, const char *value, ce_error *err)
+{
+    ce_sign sign;
+    ce_status st = cli_set_sign(&sign, value, err);
+    if (st != CE_OK) return st;
+    FOR_LAYOUTS(l, to) l->exo_up = sign == CE_SIGN_EXO_UP;
+    return CE_OK;
+}
+
+ce_status cli_set_layout_delimiter(void *to, const char *value, ce_error *err)
+{
+    char mark;
+    ce_status st = cli_set_delimiter(&mark, value, err);
+    if (st != CE_OK) return st;
+    FOR_LAYOUTS(l, to) l->delimiter = mark;
+    return CE_OK;
+}
+
+ce_status cli_set_layout_decimal(void *to, const char *value, ce_error *err)
+{
+    char mark;
+    ce_status st = cli_set_decimal(&mark, value, err);
+    if (st != CE_OK) return st;
+    FOR_LAYOUTS(l, to) l->decimal = mark;
+    return CE_OK;
+}
+
+ce_status cli_set_encoding(void *to, const char *value, ce_error *err)
+{
+    (void)err;
+    FOR_LAYOUTS(l, to) l->encoding = value;
+    return CE_OK;
+}
+
+ce_status cli_set_time_unit(void *to, const char *value, ce_error *err)
+{
+    (void)err;
+    FOR_LAYOUTS(l, to) l->time_unit = value;
+    return CE_OK;
+}
+
+ce_status cli_set_temperature_unit(void *to, const char *value, ce_error *err)
+{
+    (void)err;
+    FOR_LAYOUTS(l, to) l->temperature_unit = strcmp(value, "C") == 0 ? "°C" : value;
+    return CE_OK;
+}
+
+ce_status cli_set_signal_unit(void *to, const char *value, ce_error *err)
+{
+    (void)err;
+    FOR_LAYOUTS(l, to) l->signal_unit = value;
     return CE_OK;
 }
 
@@ -248,6 +318,8 @@ static ce_status add_sample(cli_simulating *s, ce_role role, const char *value, 
         return ce_fail(err, CE_E_LIMIT, "more than %d samples", CLI_MAX_SAMPLES);
     if (!split(value, ':', first, &mn))
         return ce_fail(err, CE_E_SYNTAX, "'%.60s' is not NAME:MN", value);
+    if (strchr(first, '/') != NULL) /* its runs are named after it */
+        return ce_fail(err, CE_E_ARG, "'%.60s': a sample's name cannot hold a slash", value);
     ce_sample_plan *p = &s->sample[k];
     ce_status st = value_of(&p->mn_g_mol, mn, CE_DIM_MOLAR_MASS, "g/mol", err);
     if (st != CE_OK) return st;

@@ -7,6 +7,7 @@
 #include <chainend/simulate.h>
 
 #include "cli/cli.h"
+#include "cli/reading.h"
 
 #define CLI_MAX_STEPS   64
 #define CLI_MAX_SAMPLES 200
@@ -48,8 +49,18 @@ ce_status cli_set_transient(void *to, const char *value, ce_error *err);
 ce_status cli_set_gram(void *to, const char *value, ce_error *err);
 ce_status cli_set_seed(void *to, const char *value, ce_error *err);
 ce_status cli_add_layouts(void *to, const char *value, ce_error *err);
+/* These change the layouts named so far. */
 ce_status cli_set_last_heating_only(void *to, const char *value, ce_error *err);
 ce_status cli_set_hidden_sign(void *to, const char *value, ce_error *err);
+ce_status cli_set_layout_sign(void *to, const char *value, ce_error *err);
+ce_status cli_set_layout_delimiter(void *to, const char *value, ce_error *err);
+ce_status cli_set_layout_decimal(void *to, const char *value, ce_error *err);
+ce_status cli_set_encoding(void *to, const char *value, ce_error *err);
+ce_status cli_set_time_unit(void *to, const char *value, ce_error *err);
+ce_status cli_set_temperature_unit(void *to, const char *value, ce_error *err);
+ce_status cli_set_signal_unit(void *to, const char *value, ce_error *err);
+
+ce_status cli_set_prior_age(void *to, const char *value, ce_error *err);
 ce_status cli_add_standard(void *to, const char *value, ce_error *err);
 ce_status cli_add_unknown(void *to, const char *value, ce_error *err);
 ce_status cli_add_control(void *to, const char *value, ce_error *err);
@@ -72,15 +83,15 @@ ce_status cli_set_sim_relation(void *to, const char *value, ce_error *err);
      .kind = CLI_NUMBER, .to = &(s)->config.glass[0].x, .low = -1e300, .high = 1e300},                                  \
     {.name = "beta", .argument = "X", .help = "stretching exponent, 0 to 1",                                            \
      .kind = CLI_NUMBER, .to = &(s)->config.glass[0].beta, .low = -1e300, .high = 1e300},                               \
-    {.name = "reference", .argument = "T", .help = "temperature the heat-capacity lines are anchored at",               \
+    {.name = "reference", .argument = "T", .help = "temperature the heat-capacity lines are anchored at (default 100 °C)",             \
      .kind = CLI_CALL, .to = &(s)->config.glass[0].ref_K, .call = cli_set_kelvin},                                      \
-    {.name = "cp-glass", .argument = "CP", .help = "heat capacity of the glass there, J/(g K)",                         \
+    {.name = "cp-glass", .argument = "CP", .help = "heat capacity of the glass there, J/(g K) (default 1.6)",                         \
      .kind = CLI_NUMBER, .to = &(s)->config.glass[0].cp_glass, .low = -1e300, .high = 1e300},                           \
-    {.name = "slope-glass", .argument = "X", .help = "its slope, J/(g K^2)",                                            \
+    {.name = "slope-glass", .argument = "X", .help = "its slope, J/(g K^2) (default 0.0035)",                                            \
      .kind = CLI_NUMBER, .to = &(s)->config.glass[0].slope_glass, .low = -1e300, .high = 1e300},                        \
-    {.name = "step", .argument = "CP", .help = "step height there, J/(g K)",                                            \
+    {.name = "step", .argument = "CP", .help = "step height there, J/(g K) (default 0.30)",                                            \
      .kind = CLI_NUMBER, .to = &(s)->config.glass[0].step, .low = -1e300, .high = 1e300},                               \
-    {.name = "slope-step", .argument = "X", .help = "slope of the step height, J/(g K^2)",                              \
+    {.name = "slope-step", .argument = "X", .help = "slope of the step height, J/(g K^2) (default -0.001)",                              \
      .kind = CLI_NUMBER, .to = &(s)->config.glass[0].slope_step, .low = -1e300, .high = 1e300},                         \
     {.name = "second", .argument = "T:SHARE", .help = "a second glass of a blend: its Tg and its mass fraction",        \
      .kind = CLI_TEXT, .to = &(s)->second}
@@ -92,6 +103,10 @@ ce_status cli_set_sim_relation(void *to, const char *value, ce_error *err);
      .kind = CLI_CALL, .to = (s), .call = cli_add_ramp},                                                                \
     {.name = "hold", .argument = "TIME", .help = "then a hold, e.g. 5min; ramps and holds follow one another as given", \
      .kind = CLI_CALL, .to = (s), .call = cli_add_hold},                                                                \
+    {.name = "prior-rate", .argument = "RATE", .help = "cooling rate before the start, e.g. 40K/min (default 10)",     \
+     .kind = CLI_CALL, .to = &(s)->config.programme.prior_rate_K_min, .call = cli_set_rate},                            \
+    {.name = "prior-age", .argument = "T:TIME", .help = "then aged at T for TIME before the start, e.g. 70C:48h",      \
+     .kind = CLI_CALL, .to = &(s)->config.programme, .call = cli_set_prior_age},                                        \
     {.name = "max-step", .argument = "KELVIN", .help = "temperature step of the integration (default 0.1)",             \
      .kind = CLI_NUMBER, .to = &(s)->config.max_step_K, .low = -1e300, .high = 1e300}
 
@@ -127,7 +142,21 @@ ce_status cli_set_sim_relation(void *to, const char *value, ce_error *err);
     {.name = "last-heating-only", .help = "in the layouts named so far, leave out what was recorded before the last heating", \
      .kind = CLI_CALL, .to = (s), .call = cli_set_last_heating_only},                                                   \
     {.name = "hide-sign", .help = "in the layouts named so far, do not name the sign of heat flow",                   \
-     .kind = CLI_CALL, .to = (s), .call = cli_set_hidden_sign}
+     .kind = CLI_CALL, .to = (s), .call = cli_set_hidden_sign},                                                         \
+    {.name = "sign", .argument = "SIGN", .help = "in the layouts named so far: endo-up or exo-up",                      \
+     .kind = CLI_CALL, .to = (s), .call = cli_set_layout_sign},                                                              \
+    {.name = "delimiter", .argument = "NAME", .help = "in the layouts named so far: comma, semicolon, tab, pipe or blank", \
+     .kind = CLI_CALL, .to = (s), .call = cli_set_layout_delimiter},                                                           \
+    {.name = "decimal", .argument = "MARK", .help = "in the layouts named so far: point or comma",                \
+     .kind = CLI_CALL, .to = (s), .call = cli_set_layout_decimal},                                                        \
+    {.name = "encoding", .argument = "NAME", .help = "in the layouts named so far, e.g. UTF-8-BOM, UTF-16LE, ISO-8859-1", \
+     .kind = CLI_CALL, .to = (s), .call = cli_set_encoding},                                                            \
+    {.name = "time-unit", .argument = "UNIT", .help = "in the layouts named so far: s or min",                         \
+     .kind = CLI_CALL, .to = (s), .call = cli_set_time_unit},                                                           \
+    {.name = "temperature-unit", .argument = "UNIT", .help = "in the layouts named so far: C or K",                    \
+     .kind = CLI_CALL, .to = (s), .call = cli_set_temperature_unit},                                                    \
+    {.name = "signal-unit", .argument = "UNIT", .help = "in the layouts named so far: mW, W/g or 'J/(g K)'",           \
+     .kind = CLI_CALL, .to = (s), .call = cli_set_signal_unit}
 
 #define CLI_SAMPLE_OPTIONS(s)                                                                                           \
     {.name = "standard", .argument = "NAME:MN", .help = "a standard with this true Mn, e.g. Q1:20kg/mol",               \

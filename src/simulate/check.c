@@ -38,7 +38,7 @@ static ce_status check_glass(const ce_glass *g, ce_error *err)
         {"--slope-glass", g->slope_glass, -1.0, 1.0, true, true, " J/(g K^2)"},
         {"--step", g->step, 0.0, 100.0, false, true, " J/(g K)"},
         {"--slope-step", g->slope_step, -1.0, 1.0, true, true, " J/(g K^2)"},
-        {"--share", g->share, 0.0, 1.0, false, true, ""},
+        {"--second SHARE", g->share, 0.0, 1.0, false, true, ""},
     };
     return check_rules(rules, COUNT(rules), err);
 }
@@ -150,7 +150,7 @@ ce_status ce_simulation_check(const ce_simulation_config *config, ce_error *err)
     }
     if (st == CE_OK && !(shares <= 1.0 + 1.0e-9))
         st = ce_fail(err, CE_E_DOMAIN,
-                     "--share: the shares of the glasses add to %.9g, more than 1", shares);
+                     "--second: the shares of the glasses add to %.9g, more than 1", shares);
     if (st == CE_OK) st = check_programme(&config->programme, err);
     if (st == CE_OK) st = check_instrument(&config->instrument, err);
     if (st == CE_OK) st = check_peaks(config, err);

@@ -241,6 +241,9 @@ static ce_status check_plan(const ce_series_plan *plan, ce_error *err)
         const ce_sample_plan *s = &plan->sample[i];
         if (s->name == NULL || s->name[0] == '\0')
             return ce_fail(err, CE_E_DOMAIN, "sample %zu of the series has no name", i + 1);
+        for (size_t k = 0; k < i; k++)
+            if (strcmp(plan->sample[k].name, s->name) == 0)
+                return ce_fail(err, CE_E_DOMAIN, "two samples are named '%s'", s->name);
         if (!(s->mn_g_mol > 0.0 && isfinite(s->mn_g_mol)))
             return ce_fail(err, CE_E_DOMAIN, "sample '%s': Mn %g g/mol is not positive", s->name,
                            s->mn_g_mol);

@@ -28,12 +28,61 @@ load common
     diff -r made/runs "$SOURCE/examples/quellstein/runs"
 }
 
+# refuses OPTION ARGUMENT...: the message names OPTION and nothing is written.
+refuses() {
+    option=$1
+    shift
+    run_it simulate run -o refused.csv "$@"
+    expect_status 2
+    expect_in "$err" "$option"
+    [ ! -e refused.csv ]
+}
+
 @test "impossible input is refused with the option named" {
-    for bad in "--x 1.5" "--x 0" "--beta 0" "--beta 1.2" "--start 20C --ramp 100C@-5" "--start 20C --hold 0s" \
-        "--noise -1uW" "--mass 0mg" "--start 20C --ramp 20C@10"; do
-        # shellcheck disable=SC2086
-        run_it simulate run $bad
-        expect_status 2
-        expect_in "$err" "${bad%% *}" || expect_in "$err" "--ramp" || expect_in "$err" "--hold"
-    done
+    refuses --x --x 1.5
+    refuses --x --x 0
+    refuses --beta --beta 0
+    refuses --beta --beta 1.2
+    refuses --ramp --start 20C --ramp 100C@-5
+    refuses --ramp --start 20C --ramp 20C@10
+    refuses --hold --start 20C --hold 0s
+    refuses --start --ramp 120C@10
+    refuses --noise --noise -1uW
+    refuses --mass --mass 0mg
+    refuses --second --second 60C:1.2
+    refuses --second --second 60C
+    refuses --prior-rate --prior-rate 0K/min
+    refuses --prior-age --prior-age 70C:-5h
+    refuses --prior-age --prior-age 70C
+    refuses --delimiter --delimiter colon
+    refuses --decimal --decimal dot
+    refuses --encoding --encoding NO-SUCH
+    refuses --time-unit --time-unit h
+    refuses --temperature-unit --temperature-unit F
+    refuses --signal-unit --signal-unit V
+    refuses --parameters --parameters x
+}
+
+@test "a run is written in the layout asked for and read back the same" {
+    glass='--tg 85C --noise 2uW'
+    # shellcheck disable=SC2086
+    "$CHAINEND" simulate run $glass -o plain.csv
+    # shellcheck disable=SC2086
+    "$CHAINEND" simulate run $glass --delimiter pipe --decimal comma --encoding UTF-16LE \
+        --time-unit min --temperature-unit K --signal-unit mW --sign exo-up -o other.txt
+    run_it inspect --format json --mass 10mg other.txt
+    expect_status 0
+    expect_in "$(jq -r '.runs[0].facts[] | select(.key == "encoding").value' out.txt)" UTF-16LE
+    tg() { "$CHAINEND" tg --format json --mass 10mg "$1" | jq '.runs[0].transitions[0].half_step.value_K'; }
+    jq -en --argjson a "$(tg plain.csv)" --argjson b "$(tg other.txt)" '($a - $b) | fabs < 0.01'
+}
+
+@test "ageing before the run raises the overshoot" {
+    below='--tg 85C --start 20C --ramp 130C@10'
+    peak() { jq '.ramps[0].peak' "$1"; }
+    # shellcheck disable=SC2086
+    "$CHAINEND" simulate run $below --truth fresh.json -o fresh.csv
+    # shellcheck disable=SC2086
+    "$CHAINEND" simulate run $below --prior-age 70C:48h --truth aged.json -o aged.csv
+    jq -en --argjson a "$(peak aged.json)" --argjson f "$(peak fresh.json)" '$a > $f + 0.2'
 }

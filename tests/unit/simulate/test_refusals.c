@@ -29,7 +29,7 @@ static const field fields[] = {
     {GLASS(slope_glass), "--slope-glass:", {2.0, -2.0}, 2},
     {GLASS(step), "--step:", {0.0, -0.3}, 2},
     {GLASS(slope_step), "--slope-step:", {2.0, -2.0, -0.05}, 3}, /* the last: lines cross */
-    {GLASS(share), "--share:", {0.0, 1.5}, 2},
+    {GLASS(share), "--second SHARE:", {0.0, 1.5}, 2},
     {PROGRAMME(start_K), "--start:", {0.0, -1.0}, 2},
     {PROGRAMME(prior_rate_K_min), "--prior-rate:", {0.0, -10.0}, 2},
     {PROGRAMME(prior_age_s), "--prior-age:", {-1.0}, 1},
@@ -131,9 +131,75 @@ static void impossible_peaks_and_blends_are_refused(void **state)
     c = sound();
     c.n_glasses = 2;
     c.glass[1] = c.glass[0];
-    expect_refused(&c, "--share:"); /* two whole glasses */
+    expect_refused(&c, "--second:"); /* two whole glasses */
     c.n_glasses = 3;
     expect_refused(&c, "");
+}
+
+static double flat(double mn_g_mol, const void *context)
+{
+    (void)context;
+    return 380.0 - 1.0e5 / mn_g_mol;
+}
+
+static void expect_series_refused(const ce_series_plan *plan, const char *named)
+{
+    ce_error err = CE_ERROR_INIT;
+    ce_simulated_series series;
+    assert_int_equal(ce_simulate_series(plan, &series, &err), CE_E_DOMAIN);
+    assert_non_null(strstr(err.message, named));
+    assert_int_equal(series.n, 0);
+    assert_null(series.sample);
+}
+
+static void impossible_series_are_refused(void **state)
+{
+    (void)state;
+    ce_sample_plan samples[2] = {{"A", CE_STANDARD, 5.0e3, 2}, {"B", CE_STANDARD, 5.0e4, 2}};
+    ce_series_plan plan = ce_series_plan_default();
+    plan.n = 2;
+    plan.sample = samples;
+    plan.relation = flat;
+    ce_simulated_series series;
+    assert_int_equal(ce_simulate_series(&plan, &series, NULL), CE_OK); /* sound as it stands */
+    assert_int_equal(series.n, 2);
+    ce_simulated_series_free(&series);
+
+    const struct {
+        size_t at;
+        const char *option;
+        double bad[2];
+    } numbers[] = {
+        {offsetof(ce_series_plan, mn_u_rel), "--mn-u", {-0.01, 0.3}},
+        {offsetof(ce_series_plan, mn_common_u_rel), "--mn-common-u", {-0.01, 0.3}},
+        {offsetof(ce_series_plan, run_sd_K), "--run-sd", {-1.0, 101.0}},
+        {offsetof(ce_series_plan, sample_sd_K), "--sample-sd", {-1.0, (double)NAN}},
+        {offsetof(ce_series_plan, mass_spread), "--mass-spread", {-0.1, 0.95}},
+        {offsetof(ce_series_plan, programme_tg_K), "--programme-tg", {-5.0, 4000.0}},
+    };
+    for (size_t i = 0; i < sizeof numbers / sizeof *numbers; i++)
+        for (size_t k = 0; k < 2; k++) {
+            ce_series_plan bad = plan;
+            memcpy((char *)&bad + numbers[i].at, &numbers[i].bad[k], sizeof(double));
+            expect_series_refused(&bad, numbers[i].option);
+        }
+    plan.anchor = CE_ONSET;
+    expect_series_refused(&plan, "--anchor");
+    plan.anchor = CE_HALF_STEP;
+    samples[1].runs = 0;
+    expect_series_refused(&plan, "--runs");
+    samples[1].runs = 2;
+    samples[1].mn_g_mol = -1.0;
+    expect_series_refused(&plan, "'B'");
+    samples[1].mn_g_mol = 10.0; /* a Tg below absolute zero */
+    expect_series_refused(&plan, "'B'");
+    samples[1].mn_g_mol = 5.0e4;
+    samples[1].name = "A";
+    expect_series_refused(&plan, "two samples are named 'A'");
+    samples[1].name = "";
+    expect_series_refused(&plan, "no name");
+    plan.n = 0;
+    expect_series_refused(&plan, "at least one sample");
 }
 
 static void what_is_refused_above_works_unchanged(void **state)
@@ -151,6 +217,7 @@ int main(void)
         cmocka_unit_test(every_impossible_number_is_refused_by_its_option),
         cmocka_unit_test(impossible_programmes_are_refused),
         cmocka_unit_test(impossible_peaks_and_blends_are_refused),
+        cmocka_unit_test(impossible_series_are_refused),
         cmocka_unit_test(what_is_refused_above_works_unchanged),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);
