@@ -3,6 +3,7 @@
  * every other line goes through libcsv and is judged. Both give the same table. */
 #include "run/reader.h"
 
+#include "base/large.h"
 #include "text/number.h"
 
 #include <math.h>
@@ -432,11 +433,9 @@ ce_status ce_reader_rows(ce_reader *r)
         if (rows->room < 16) rows->room = 16;
         for (size_t c = 0; st == CE_OK && c < r->n_columns; c++) {
             if (rows->value[c] == NULL) continue;
-            double *p = reallocarray(rows->value[c], rows->room, sizeof *p);
-            if (p == NULL)
-                st = ce_reader_no_memory(r);
-            else
-                rows->value[c] = p;
+            free(rows->value[c]);
+            rows->value[c] = ce_large(rows->room, sizeof(double));
+            if (rows->value[c] == NULL) st = ce_reader_no_memory(r);
         }
     }
     scanner s = {.r = r, .row = row, .line = r->data_line};

@@ -1,6 +1,8 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
 #include "text/load.h"
 
+#include "base/large.h"
+
 #include <errno.h>
 #include <fcntl.h>
 #include <stdlib.h>
@@ -60,7 +62,7 @@ static ce_status read_all(int fd, size_t size_hint, const char *name, size_t max
 {
     size_t room = 0, line_begin = 0;
     if (size_hint < max) {
-        b->data = malloc(size_hint + 2);
+        b->data = ce_large(size_hint + 2, 1);
         if (b->data == NULL) return ce_fail_at(err, CE_E_NOMEM, name, 0, 0, "out of memory");
         room = size_hint + 2;
     }
