@@ -32,6 +32,8 @@ CE_API ce_relation ce_relation_find(const char *name);
 CE_API const char *ce_relation_formula(ce_relation relation);
 CE_API const char *ce_relation_validity(ce_relation relation);
 CE_API const char *ce_relation_source(ce_relation relation);
+/* Linear in its parameters: intervals by Student t; else by profile likelihood. */
+CE_API bool ce_relation_linear(ce_relation relation);
 CE_API size_t ce_relation_parameters(ce_relation relation); /* how many                        */
 CE_API const char *ce_relation_parameter_name(ce_relation relation, size_t i); /* "Tg_inf"     */
 CE_API const char *ce_relation_parameter_unit(ce_relation relation, size_t i); /* "K g/mol"    */
@@ -234,7 +236,16 @@ typedef struct {
  *   Sources: York et al., Am. J. Phys. 72 (2004) 367; see chainend-methods(7). */
 CE_API ce_status ce_fit_relation(size_t n_standards, const ce_standard *standard,
                                  const ce_fit_options *options, ce_fit *fit, ce_error *err);
-/* The same for the used standards of an evaluated series. */
+/* ce_fit_reduce_rates - bring every Tg of an evaluated series to series->reduce_to_K_min with one
+ * slope per decade of rate fitted within its samples (ce_rate_slope_fit()), all roles together. The
+ * rows and samples then hold the reduced values, the rows what was taken off.
+ *   out  slope   what was fitted; may be NULL
+ *   ret  CE_OK (also when all rows are at that rate already: nothing is changed, the slope's value
+ *        is NaN) | as ce_rate_slope_fit() | CE_E_REFUSED (a used row has no rate) */
+struct ce_rate_slope;
+CE_API ce_status ce_fit_reduce_rates(ce_series *series, struct ce_rate_slope *slope, ce_error *err);
+/* The same for the used standards of an evaluated series. When its rates were reduced the slope's
+ * uncertainty is taken from it, whatever the options say. */
 CE_API ce_status ce_fit_series(const ce_series *series, const ce_fit_options *options, ce_fit *fit,
                                ce_error *err);
 /* Releases what the fit owns and empties it. NULL allowed; a fit set to {0} too. */
@@ -284,7 +295,7 @@ CE_API ce_status ce_fit_band(const ce_fit *fit, const ce_molar *molar, double mn
                              double level, ce_band *band);
 
 /* Heating rate: one slope per decade common to all samples, fitted within the samples. */
-typedef struct {
+typedef struct ce_rate_slope {
     double slope_K_decade, u_K_decade, nu;
     double reference_K_min;
     double run_sd_K;               /* about the parallel lines                                   */

@@ -58,6 +58,7 @@ typedef struct {
     /* after ce_series_evaluate() */
     bool used;          /* goes into its sample's mean                                     */
     char *reason;       /* why not, in words; NULL when used                               */
+    double reduced_K;   /* what ce_fit_reduce_rates() took off tg_K; 0 = as measured       */
     ce_reading reading; /* of the construction taken; value NaN for a bare Tg              */
     size_t heating;     /* nth heating of its file; 0 for a bare Tg                        */
     size_t n_flags;
@@ -72,6 +73,7 @@ typedef struct {
     size_t n_used;
     double *tg_K;        /* of the n_used used rows, owned                                  */
     double *tg_u_K;      /* their stated uncertainties; NaN where not stated, as for runs    */
+    double rate_decades; /* mean log10(rate/reference) of the used rows; 0 unless reduced   */
     double reading_u_K;  /* r.m.s. uncertainty of the readings off runs; NaN for bare Tg      */
     double mean_K, sd_K; /* of the used rows; sd NaN below two                              */
     double mn_g_mol, mn_u_g_mol, mw_g_mol, chain_ends; /* NaN where not given; ends default 2 */
@@ -83,6 +85,10 @@ typedef struct {
     ce_construction construction;
     bool construction_stated;
     double rate_K_min; /* NaN = not stated                                                */
+    /* Heating rate all Tg are to be reduced to, K/min; NaN (default) = rows at another rate than
+     * the series are left out. Set by the file's setting reduce_to, or before evaluating. */
+    double reduce_to_K_min;
+    double rate_slope_K_decade, rate_slope_u_K, rate_slope_nu; /* as reduced; NaN = not reduced   */
     ce_history history;
     size_t segment;         /* for all rows; 0 = choose                                        */
     double mn_common_u_rel; /* NaN = not stated                                                */
@@ -113,10 +119,14 @@ typedef void (*ce_progress)(void *context, size_t i, size_t n, const char *path)
 /* ce_series_evaluate - evaluate every run of a series and gather rows into samples.
  *   in   reading, how   defaults for the runs; what a row says for itself wins
  *   out  messages       runs refused (CE_ERROR), doubts (CE_WARNING)
- *   ret  CE_OK | CE_E_NOMEM. A refused run stays in the table with used = false and a reason. */
+ *   ret  CE_OK | CE_E_NOMEM | CE_E_DOMAIN (stated rates differ and none to reduce to is given).
+ * A refused run stays in the table with used = false and a reason. */
 CE_API ce_status ce_series_evaluate(ce_series *series, const ce_run_options *reading,
                                     const ce_transition_options *how, ce_progress progress,
                                     void *context, ce_messages *messages, ce_error *err);
+/* Means and scatter of the samples and the repeatability, anew from the rows as they stand.
+ * CE_OK or CE_E_NOMEM. */
+CE_API ce_status ce_series_average(ce_series *series);
 CE_API void ce_series_free(ce_series *series);
 
 #ifdef __cplusplus

@@ -10,6 +10,7 @@ cli_calibrating cli_calibrating_default(void)
     return (cli_calibrating){.reading = ce_run_options_default(),
                              .how = ce_transition_options_default(),
                              .take = CE_CONSTRUCTIONS,
+                             .reduce_to_K_min = (double)NAN,
                              .fit = ce_fit_options_default(),
                              .level = (double)NAN};
 }
@@ -36,6 +37,22 @@ ce_status cli_set_scatter(void *to, const char *value, ce_error *err)
     return CE_OK;
 }
 
+ce_status cli_set_excess(void *to, const char *value, ce_error *err)
+{
+    bool found;
+    ce_excess e = ce_excess_find(value, &found);
+    if (!found)
+        return ce_fail(err, CE_E_ARG, "'%.30s' is none of auto, none, additive, multiplicative",
+                       value);
+    *(ce_excess *)to = e;
+    return CE_OK;
+}
+
+ce_status cli_set_fit_seed(void *to, const char *value, ce_error *err)
+{
+    return cli_whole_number(to, value, err);
+}
+
 int cli_read_series(const cli_command *command, const char *path, const cli_calibrating *c,
                     bool quiet, ce_series *series)
 {
@@ -44,10 +61,13 @@ int cli_read_series(const cli_command *command, const char *path, const cli_cali
     ce_status st = ce_series_read(path, series, &messages, &err);
     if (st == CE_OK) {
         if (c->take != CE_CONSTRUCTIONS) series->construction = c->take;
+        if (!isnan(c->reduce_to_K_min)) series->reduce_to_K_min = c->reduce_to_K_min;
         cli_progress progress = cli_progress_begin("runs", quiet);
         st = ce_series_evaluate(series, &c->reading, &c->how, cli_progress_step, &progress,
                                 &messages, &err);
         cli_progress_end(&progress);
+        if (st == CE_OK && !isnan(series->reduce_to_K_min))
+            st = ce_fit_reduce_rates(series, NULL, &err);
     }
     cli_messages(command, &messages, quiet);
     bool part = ce_messages_count(&messages, CE_ERROR) > 0;

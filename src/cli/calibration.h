@@ -14,7 +14,8 @@
 typedef struct {
     ce_run_options reading;
     ce_transition_options how;
-    ce_construction take; /* CE_CONSTRUCTIONS = as the series says */
+    ce_construction take;   /* CE_CONSTRUCTIONS = as the series says */
+    double reduce_to_K_min; /* NaN = as the series says */
     ce_fit_options fit;
     double level; /* NaN = as the series says, else the fit's default */
 } cli_calibrating;
@@ -22,11 +23,15 @@ typedef struct {
 cli_calibrating cli_calibrating_default(void);
 ce_status cli_set_relation(void *to, const char *value, ce_error *err);
 ce_status cli_set_scatter(void *to, const char *value, ce_error *err);
+ce_status cli_set_excess(void *to, const char *value, ce_error *err);
+ce_status cli_set_fit_seed(void *to, const char *value, ce_error *err);
 
 /* clang-format off */
 #define CLI_SERIES_OPTIONS(c)                                                                                           \
     {.name = "take", .argument = "CONSTRUCTION", .help = "what counts as the Tg, whatever the series says: half_step, " \
      "midpoint, onset, inflection, end, fictive", .kind = CLI_CALL, .to = &(c)->take, .call = cli_set_take},            \
+    {.name = "reduce-to", .argument = "RATE", .help = "reduce all Tg to this heating rate by a common slope per decade, "    \
+     "fitted within the samples, e.g. 10K/min", .kind = CLI_CALL, .to = &(c)->reduce_to_K_min, .call = cli_set_rate},   \
     CLI_EVALUATION_OPTIONS(&(c)->how), CLI_READING_OPTIONS(&(c)->reading)
 
 #define CLI_FIT_OPTIONS(c)                                                                                              \
@@ -36,7 +41,16 @@ ce_status cli_set_scatter(void *to, const char *value, ce_error *err);
      .kind = CLI_NUMBER, .to = &(c)->level, .low = 0, .high = 1},                                                       \
     {.name = "scatter", .argument = "FROM", .help = "where the scatter of Tg comes from: repeats, stated or residuals " \
      "(default: repeats where the standards have them, else stated, else residuals with a warning)",                    \
-     .kind = CLI_CALL, .to = &(c)->fit.scatter, .call = cli_set_scatter}
+     .kind = CLI_CALL, .to = &(c)->fit.scatter, .call = cli_set_scatter},                                               \
+    {.name = "excess", .argument = "HOW", .help = "samples that scatter more than runs and certificates explain: auto " \
+     "(default: tested), none, additive (in Tg) or multiplicative (in Mn)",                                             \
+     .kind = CLI_CALL, .to = &(c)->fit.excess, .call = cli_set_excess},                                                 \
+    {.name = "tg-common-u", .argument = "KELVIN", .help = "standard uncertainty of the temperature scale, common to "   \
+     "all runs", .kind = CLI_NUMBER, .to = &(c)->fit.tg_common_u_K, .low = -1e-300, .high = 1e3},                       \
+    {.name = "resamples", .argument = "N", .help = "resample whole samples N times, as a diagnostic (default 0)",       \
+     .kind = CLI_COUNT, .to = &(c)->fit.resamples, .low = 0, .high = 1000000},                                          \
+    {.name = "seed", .argument = "N", .help = "of the resampling (default 1)",                                          \
+     .kind = CLI_CALL, .to = &(c)->fit.seed, .call = cli_set_fit_seed}
 /* clang-format on */
 
 /* Read and evaluate a series, telling its messages. Returns XIT_OK, XIT_PART (some rows were left out) or

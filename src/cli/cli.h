@@ -7,6 +7,7 @@
 
 #include <stdbool.h>
 #include <stddef.h>
+#include <stdint.h>
 #include <stdio.h>
 
 #include "output/document.h"
@@ -64,6 +65,8 @@ typedef struct {
     bool quiet;
 } cli_common;
 
+/* A whole number of at most 18 digits, as seeds are. */
+ce_status cli_whole_number(uint64_t *to, const char *value, ce_error *err);
 ce_status cli_set_format(void *to, const char *value, ce_error *err);
 #define CLI_COMMON_OPTIONS(c)                                                                      \
     {.name = "format",                                                                             \

@@ -37,6 +37,7 @@ int cmd_fit(int argc, char **argv)
                             .construction = calibration.series.construction,
                             .rate_K_min = calibration.series.rate_K_min,
                             .history = calibration.series.history,
+                            .series = &calibration.series,
                             .polymer = calibration.series.polymer,
                             .ceiling_tg_K = calibration.ceiling_tg_K,
                             .ceiling_mn_g_mol = calibration.ceiling_mn_g_mol};

@@ -172,6 +172,16 @@ bool cli_parse(const cli_command *command, const cli_option *option, size_t n_op
     return true;
 }
 
+ce_status cli_whole_number(uint64_t *to, const char *value, ce_error *err)
+{
+    char *end;
+    unsigned long long x = strtoull(value, &end, 10);
+    if (value[0] < '0' || value[0] > '9' || *end != '\0' || strlen(value) > 18)
+        return ce_fail(err, CE_E_ARG, "'%.30s' is not a whole number of at most 18 digits", value);
+    *to = x;
+    return CE_OK;
+}
+
 ce_status cli_set_format(void *to, const char *value, ce_error *err)
 {
     static const char *const names[] = {"text", "csv", "json"};

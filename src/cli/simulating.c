@@ -90,12 +90,9 @@ ce_status cli_set_fraction(void *to, const char *value, ce_error *err)
 ce_status cli_set_seed(void *to, const char *value, ce_error *err)
 {
     cli_simulating *s = to;
-    char *end;
-    unsigned long long seed = strtoull(value, &end, 10);
-    if (value[0] < '0' || value[0] > '9' || *end != '\0' || strlen(value) > 18)
-        return ce_fail(err, CE_E_ARG, "'%.30s' is not a whole number of at most 18 digits", value);
-    s->config.seed = s->plan.seed = seed;
-    return CE_OK;
+    ce_status st = cli_whole_number(&s->config.seed, value, err);
+    s->plan.seed = s->config.seed;
+    return st;
 }
 
 ce_status cli_set_anchor(void *to, const char *value, ce_error *err)

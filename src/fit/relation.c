@@ -325,6 +325,12 @@ ce_relation ce_relation_find(const char *name)
     return (ce_relation)i;
 }
 
+bool ce_relation_linear(ce_relation relation)
+{
+    const relation_entry *e = entry(relation);
+    return e != NULL && e->model.linear;
+}
+
 size_t ce_relation_parameters(ce_relation relation)
 {
     const relation_entry *e = entry(relation);

@@ -2,7 +2,6 @@
 #include "output/fit.h"
 
 #include "base/quantity.h"
-#include "output/json.h"
 #include "output/number.h"
 #include "output/series.h"
 #include "output/sheet.h"
@@ -30,6 +29,30 @@ static void put_parameter(FILE *to, const ce_fit *fit, size_t i)
     fputc('\n', to);
 }
 
+/* Where the intervals come from, and what of them is shared by all standards. */
+static void put_intervals(FILE *to, const ce_fit *fit)
+{
+    char a[CE_NUMBER_ROOM];
+    if (ce_relation_linear(fit->options.relation)) {
+        fputs("  intervals by Student t with", to);
+        for (size_t i = 0; i < fit->p; i++) {
+            if (isfinite(fit->parameter[i].nu) && fit->parameter[i].nu < 1e4)
+                fprintf(to, "%s %.3g", i == 0 ? "" : " and", fit->parameter[i].nu);
+            else
+                fprintf(to, "%s unlimited", i == 0 ? "" : " and");
+        }
+        fputs(" degrees of freedom (Welch-Satterthwaite)\n", to);
+    } else {
+        fputs("  intervals by profile likelihood\n", to);
+    }
+    for (size_t i = 0; i < fit->p; i++)
+        if (fit->parameter[i].u_common > 0.0)
+            fprintf(to, "  of u(%s) %s %s is common to all standards\n",
+                    ce_relation_parameter_name(fit->options.relation, i),
+                    ce_significant(a, fit->parameter[i].u_common, 2),
+                    ce_relation_parameter_unit(fit->options.relation, i));
+}
+
 static void put_verdict(const ce_fit_result *result, FILE *to)
 {
     const ce_fit *fit = result->fit;
@@ -43,6 +66,7 @@ static void put_verdict(const ce_fit_result *result, FILE *to)
     ce_write_definition(result->construction, result->rate_K_min, result->history, to);
     fputs("\n\n", to);
     for (size_t i = 0; i < fit->p; i++) put_parameter(to, fit, i);
+    put_intervals(to, fit);
     if (isfinite(result->ceiling_tg_K))
         fprintf(
             to,
@@ -127,10 +151,88 @@ static void put_scatter(const ce_fit *fit, FILE *to)
         fputs("between-sample test  ", to);
         ce_text_wrap(to, text, 21, 21, CE_TEXT_WIDTH);
     }
+    if (isfinite(fit->levene_p))
+        fprintf(to, "equal scatter        Levene p %s, Bartlett p %s\n",
+                ce_significant((char[CE_NUMBER_ROOM]){0}, fit->levene_p, 2),
+                ce_significant((char[CE_NUMBER_ROOM]){0}, fit->bartlett_p, 2));
     if (isfinite(fit->curvature_p))
         fprintf(to, "curvature            F %s, p %s (a further term in the weighted fit)\n",
                 ce_significant(a, fit->curvature_F, 3),
                 ce_significant((char[CE_NUMBER_ROOM]){0}, fit->curvature_p, 2));
+}
+
+/* How much hangs on single standards: each left out once, and its weight in the robust fits. */
+static ce_status put_sensitivity(const ce_fit *fit, FILE *to, bool colour)
+{
+    static const ce_sheet_column column[] = {
+        {"without", "", CE_LEFT},
+        {"Tg_inf shifts", "K", CE_POINT},
+        {"by u", "", CE_POINT},
+        {"K shifts", "%", CE_POINT},
+        {"by u", "", CE_POINT},
+        {"deleted t", "", CE_POINT},
+        {"p", "", CE_POINT},
+        {"Huber", "weight", CE_POINT},
+        {"bisquare", "weight", CE_POINT},
+    };
+    if (fit->p != 2 || isnan(fit->huber[0])) return CE_OK;
+    ce_sheet sheet;
+    ce_sheet_begin(&sheet, column, sizeof column / sizeof *column);
+    const ce_parameter *a = &fit->parameter[0], *k = &fit->parameter[1];
+    for (size_t i = 0; i < fit->n_points; i++) {
+        const ce_fit_point *p = &fit->point[i];
+        char text[CE_NUMBER_ROOM];
+        ce_sheet_text(&sheet, p->name, 24);
+        ce_sheet_cell(&sheet, "%s", ce_fixed(text, p->shift_tg_inf_K, ce_decimals(a->u)));
+        ce_sheet_cell(&sheet, "%s", ce_fixed(text, p->shift_tg_inf_K / a->u, 1));
+        ce_sheet_cell(&sheet, "%s", ce_fixed(text, 100.0 * p->shift_k / k->value, 1));
+        ce_sheet_cell(&sheet, "%s", ce_fixed(text, p->shift_k / k->u, 1));
+        ce_sheet_cell(&sheet, "%s", ce_fixed(text, p->deleted_t, 2));
+        ce_sheet_cell(&sheet, "%s", ce_significant(text, p->deleted_p, 2));
+        ce_sheet_cell(&sheet, "%s", ce_fixed(text, p->huber_weight, 2));
+        ce_sheet_cell(&sheet, "%s", ce_fixed(text, p->bisquare_weight, 2));
+    }
+    fputs("\nwhat hangs on single standards (p corrected for their number, after Bonferroni)\n",
+          to);
+    ce_status st = ce_sheet_print(&sheet, to, 0, colour);
+    if (st != CE_OK) return st;
+    char text[4][CE_NUMBER_ROOM];
+    fprintf(
+        to,
+        "robust fits: Tg_inf %s °C and K %s (Huber), %s °C and %s (bisquare); a check, not used\n",
+        ce_fixed(text[0], ce_degC_from_K(fit->huber[0]), ce_decimals(a->u)),
+        ce_fixed(text[1], fit->huber[1], ce_decimals(k->u)),
+        ce_fixed(text[2], ce_degC_from_K(fit->bisquare[0]), ce_decimals(a->u)),
+        ce_fixed(text[3], fit->bisquare[1], ce_decimals(k->u)));
+    return CE_OK;
+}
+
+static ce_status put_resampled(const ce_fit *fit, FILE *to, bool colour)
+{
+    static const ce_sheet_column column[] = {
+        {"", "", CE_LEFT},      {"s.d.", "", CE_POINT},
+        {"bias", "", CE_POINT}, {"percentiles", "", CE_POINT},
+        {"", "", CE_POINT},     {"BCa", "", CE_POINT},
+        {"", "", CE_POINT},
+    };
+    if (fit->n_resampled == 0) return CE_OK;
+    ce_sheet sheet;
+    ce_sheet_begin(&sheet, column, sizeof column / sizeof *column);
+    for (size_t i = 0; i < fit->p; i++) {
+        const ce_resampled *r = &fit->resampled[i];
+        const int places = ce_decimals(fit->parameter[i].u);
+        const double cell[] = {r->sd,      r->bias,    r->percentile_low, r->percentile_high,
+                               r->bca_low, r->bca_high};
+        char text[CE_NUMBER_ROOM];
+        ce_sheet_cell(&sheet, "%s", ce_relation_parameter_name(fit->options.relation, i));
+        for (size_t c = 0; c < sizeof cell / sizeof *cell; c++)
+            ce_sheet_cell(&sheet, "%s", ce_fixed(text, cell[c], places));
+    }
+    fprintf(to,
+            "\nwhole standards resampled %zu times, seed %llu: a check that covers less than it "
+            "says with few standards\n",
+            fit->n_resampled, (unsigned long long)fit->options.seed);
+    return ce_sheet_print(&sheet, to, 0, colour);
 }
 
 static ce_status put_comparison(const ce_fit *fit, FILE *to, bool colour)
@@ -168,173 +270,12 @@ ce_status ce_write_fit_text(const ce_fit_result *result, FILE *to, bool colour)
     ce_status st = put_points(result->fit, to, colour);
     if (st != CE_OK) return st;
     put_scatter(result->fit, to);
-    st = put_comparison(result->fit, to, colour);
+    if (result->series != NULL) ce_write_rate_reduction(result->series, to);
+    st = put_sensitivity(result->fit, to, colour);
+    if (st == CE_OK) st = put_resampled(result->fit, to, colour);
+    if (st == CE_OK) st = put_comparison(result->fit, to, colour);
     ce_remarks remarks = {.to = to, .heading = "remarks"};
     for (size_t i = 0; i < result->fit->warnings.n; i++)
         ce_remark(&remarks, NULL, result->fit->warnings.item[i].at.message);
     return st;
-}
-
-/* ---- CSV ---------------------------------------------------------------------------------- */
-
-ce_status ce_write_fit_csv(const ce_fit_result *result, FILE *to)
-{
-    const ce_fit *fit = result->fit;
-    ce_csv_heading(to,
-                   "kind,name,unit,value,u,low,high,mn_g_mol,mn_u_g_mol,runs,tg_K,tg_u_K,fitted_K,"
-                   "residual_K,leverage,influence");
-    for (size_t i = 0; i < fit->p; i++) {
-        const ce_parameter *p = &fit->parameter[i];
-        ce_csv_text(to, true, "parameter");
-        ce_csv_text(to, false, ce_relation_parameter_name(fit->options.relation, i));
-        ce_csv_text(to, false, ce_relation_parameter_unit(fit->options.relation, i));
-        ce_csv_number(to, false, p->value);
-        ce_csv_number(to, false, p->u);
-        ce_csv_number(to, false, p->low);
-        ce_csv_number(to, false, p->high);
-        for (int c = 0; c < 9; c++) ce_csv_text(to, false, NULL);
-        ce_csv_end_row(to);
-    }
-    for (size_t i = 0; i < fit->n_points; i++) {
-        const ce_fit_point *p = &fit->point[i];
-        ce_csv_text(to, true, "standard");
-        ce_csv_text(to, false, p->name);
-        for (int c = 0; c < 5; c++) ce_csv_text(to, false, NULL);
-        ce_csv_number(to, false, p->molar.mn_g_mol);
-        ce_csv_number(to, false, p->mn_u_g_mol);
-        ce_csv_count(to, false, p->n);
-        ce_csv_number(to, false, p->tg_K);
-        ce_csv_number(to, false, p->tg_u_K);
-        ce_csv_number(to, false, p->fitted_K);
-        ce_csv_number(to, false, p->residual_K);
-        ce_csv_number(to, false, p->leverage);
-        ce_csv_number(to, false, p->influence);
-        ce_csv_end_row(to);
-    }
-    return CE_OK;
-}
-
-/* ---- JSON --------------------------------------------------------------------------------- */
-
-static void set_number(json_t *o, const char *key, double x)
-{
-    (void)json_object_set_new(o, key, ce_json_number(x));
-}
-
-static json_t *json_parameters(const ce_fit *fit)
-{
-    json_t *list = json_array();
-    for (size_t i = 0; i < fit->p; i++) {
-        const ce_parameter *p = &fit->parameter[i];
-        json_t *o = json_object();
-        (void)json_object_set_new(
-            o, "name", json_string(ce_relation_parameter_name(fit->options.relation, i)));
-        (void)json_object_set_new(
-            o, "unit", json_string(ce_relation_parameter_unit(fit->options.relation, i)));
-        set_number(o, "value", p->value);
-        set_number(o, "u", p->u);
-        set_number(o, "low", p->low);
-        set_number(o, "high", p->high);
-        set_number(o, "nu", p->nu);
-        (void)json_array_append_new(list, o);
-    }
-    return list;
-}
-
-static json_t *json_covariance(const ce_fit *fit)
-{
-    json_t *rows = json_array();
-    for (size_t i = 0; i < fit->p; i++) {
-        json_t *row = json_array();
-        for (size_t k = 0; k < fit->p; k++)
-            (void)json_array_append_new(row, ce_json_number(fit->covariance[i * fit->p + k]));
-        (void)json_array_append_new(rows, row);
-    }
-    return rows;
-}
-
-static json_t *json_points(const ce_fit *fit)
-{
-    json_t *list = json_array();
-    for (size_t i = 0; i < fit->n_points; i++) {
-        const ce_fit_point *p = &fit->point[i];
-        json_t *o = json_object(), *flags = json_array();
-        (void)json_object_set_new(o, "sample", ce_json_text(p->name));
-        set_number(o, "mn_g_mol", p->molar.mn_g_mol);
-        set_number(o, "mn_u_g_mol", p->mn_u_g_mol);
-        (void)json_object_set_new(o, "runs", json_integer((json_int_t)p->n));
-        set_number(o, "tg_K", p->tg_K);
-        set_number(o, "tg_u_K", p->tg_u_K);
-        set_number(o, "fitted_K", p->fitted_K);
-        set_number(o, "residual_K", p->residual_K);
-        set_number(o, "leverage", p->leverage);
-        set_number(o, "influence", p->influence);
-        set_number(o, "deleted_t", p->deleted_t);
-        set_number(o, "deleted_p", p->deleted_p);
-        set_number(o, "shift_tg_inf_K", p->shift_tg_inf_K);
-        set_number(o, "shift_k", p->shift_k);
-        for (unsigned bit = 1u; bit <= CE_POINT_LEVERAGE; bit <<= 1)
-            if ((p->flags & bit) != 0)
-                (void)json_array_append_new(flags, json_string(ce_point_flag_text(bit)));
-        (void)json_object_set_new(o, "flags", flags);
-        (void)json_array_append_new(list, o);
-    }
-    return list;
-}
-
-static json_t *json_comparison(const ce_fit *fit)
-{
-    json_t *list = json_array();
-    for (size_t i = 0; i < fit->n_comparison; i++) {
-        const ce_comparison *c = &fit->comparison[i];
-        if (!c->fitted) continue;
-        (void)json_array_append_new(
-            list, json_pack("{s:s,s:o,s:o,s:o,s:o,s:b}", "relation", ce_relation_name(c->relation),
-                            "aicc", ce_json_number(c->aicc), "weight", ce_json_number(c->weight),
-                            "tg_inf_K", ce_json_number(c->tg_inf_K), "mid_mn_g_mol",
-                            ce_json_number(c->mid_mn_g_mol), "plausible", c->plausible));
-    }
-    return list;
-}
-
-static json_t *json_test(double F, double p)
-{
-    if (!isfinite(F)) return json_null();
-    return json_pack("{s:o,s:o}", "F", ce_json_number(F), "p", ce_json_number(p));
-}
-
-ce_status ce_write_fit_json(const ce_fit_result *result, FILE *to)
-{
-    const ce_fit *fit = result->fit;
-    json_t *o = json_object(), *warnings = json_array();
-    (void)json_object_set_new(o, "schema", json_string("chainend.fit/1"));
-    (void)json_object_set_new(o, "polymer", ce_json_text(result->polymer));
-    (void)json_object_set_new(o, "construction",
-                              json_string(ce_construction_name(result->construction)));
-    set_number(o, "rate_K_min", result->rate_K_min);
-    (void)json_object_set_new(o, "history", json_string(ce_history_name(result->history)));
-    (void)json_object_set_new(o, "relation", json_string(ce_relation_name(fit->options.relation)));
-    (void)json_object_set_new(o, "formula",
-                              json_string(ce_relation_formula(fit->options.relation)));
-    set_number(o, "level", fit->options.level);
-    (void)json_object_set_new(o, "scatter", json_string(ce_scatter_name(fit->options.scatter)));
-    (void)json_object_set_new(o, "parameters", json_parameters(fit));
-    (void)json_object_set_new(o, "covariance", json_covariance(fit));
-    set_number(o, "residual_sd_K", fit->residual_sd_K);
-    set_number(o, "run_sd_K", fit->run_sd_K);
-    set_number(o, "run_nu", fit->run_nu);
-    set_number(o, "chi2", fit->chi2);
-    set_number(o, "dof", fit->dof);
-    set_number(o, "excess_tau_K", fit->excess_tau_K);
-    set_number(o, "excess_r", fit->excess_r);
-    (void)json_object_set_new(o, "lack_of_fit", json_test(fit->lack_of_fit_F, fit->lack_of_fit_p));
-    (void)json_object_set_new(o, "curvature", json_test(fit->curvature_F, fit->curvature_p));
-    (void)json_object_set_new(o, "samples", json_points(fit));
-    (void)json_object_set_new(o, "comparison", json_comparison(fit));
-    set_number(o, "ceiling_tg_K", result->ceiling_tg_K);
-    set_number(o, "ceiling_mn_g_mol", result->ceiling_mn_g_mol);
-    for (size_t i = 0; i < fit->warnings.n; i++)
-        (void)json_array_append_new(warnings, ce_json_text(fit->warnings.item[i].at.message));
-    (void)json_object_set_new(o, "warnings", warnings);
-    return ce_json_write(o, to);
 }

@@ -14,6 +14,7 @@ typedef struct {
     double rate_K_min;
     ce_history history;
     const char *polymer;
+    const ce_series *series; /* NULL = not at hand: nothing is said of a reduction of rates */
     double ceiling_tg_K, ceiling_mn_g_mol; /* for one run of an unknown; NaN = no reading has one */
 } ce_fit_result;
 

@@ -25,6 +25,19 @@ void ce_write_definition(ce_construction construction, double rate_K_min, ce_his
         fprintf(to, ", history %s", ce_history_name(history));
 }
 
+void ce_write_rate_reduction(const ce_series *series, FILE *to)
+{
+    char a[CE_NUMBER_ROOM], b[CE_NUMBER_ROOM], c[CE_NUMBER_ROOM];
+    if (isnan(series->rate_slope_K_decade)) return;
+    const int places = ce_decimals(series->rate_slope_u_K);
+    fprintf(to,
+            "heating rate: all Tg reduced to %s K/min by %s K per decade, u %s K, %.0f degrees of "
+            "freedom\n",
+            ce_significant(a, series->reduce_to_K_min, 3),
+            ce_fixed(b, series->rate_slope_K_decade, places),
+            ce_fixed(c, series->rate_slope_u_K, places), series->rate_slope_nu);
+}
+
 /* ---- text --------------------------------------------------------------------------------- */
 
 static double uncertainty_of(const ce_series *series, const ce_sample *s)
@@ -107,6 +120,7 @@ ce_status ce_write_series_text(const ce_series *series, FILE *to, bool colour)
                 ce_significant(a, series->run_sd_K, 2), series->run_nu);
     else
         fputs("\nrepeatability: not known, no standard has repeats\n", to);
+    ce_write_rate_reduction(series, to);
     put_remarks(series, to);
     return CE_OK;
 }
@@ -116,7 +130,7 @@ ce_status ce_write_series_text(const ce_series *series, FILE *to, bool colour)
 ce_status ce_write_series_csv(const ce_series *series, FILE *to)
 {
     ce_csv_heading(to, "line,sample,role,mn_g_mol,mn_u_g_mol,mw_g_mol,chain_ends,run,tg_K,tg_u_K,"
-                       "construction,rate_K_min,segment,heating,used,reason,date,note");
+                       "construction,rate_K_min,segment,heating,used,reason,date,note,reduced_K");
     for (size_t i = 0; i < series->n_rows; i++) {
         const ce_series_row *r = &series->row[i];
         ce_csv_count(to, true, r->line);
@@ -143,6 +157,7 @@ ce_status ce_write_series_csv(const ce_series *series, FILE *to)
         ce_csv_text(to, false, r->reason);
         ce_csv_text(to, false, r->date);
         ce_csv_text(to, false, r->note);
+        ce_csv_number(to, false, r->reduced_K);
         ce_csv_end_row(to);
     }
     return CE_OK;
@@ -163,13 +178,13 @@ static json_t *json_row(const ce_series_row *r)
         ce_flag_text(&r->flags[f], text, sizeof text);
         (void)json_array_append_new(flags, json_string(text));
     }
-    return json_pack("{s:I,s:o,s:o,s:o,s:o,s:o,s:o,s:b,s:o,s:o,s:o,s:o}", "line",
-                     (json_int_t)r->line, "run", ce_json_text(r->run), "tg_K",
-                     ce_json_number(r->tg_K), "tg_u_K", ce_json_number(r->tg_u_K), "rate_K_min",
-                     ce_json_number(r->rate_K_min), "segment", json_count_or_null(r->segment),
-                     "heating_number", json_count_or_null(r->heating), "used", r->used, "reason",
-                     ce_json_text(r->reason), "date", ce_json_text(r->date), "note",
-                     ce_json_text(r->note), "flags", flags);
+    return json_pack(
+        "{s:I,s:o,s:o,s:o,s:o,s:o,s:o,s:b,s:o,s:o,s:o,s:o,s:o}", "line", (json_int_t)r->line, "run",
+        ce_json_text(r->run), "tg_K", ce_json_number(r->tg_K), "tg_u_K", ce_json_number(r->tg_u_K),
+        "rate_K_min", ce_json_number(r->rate_K_min), "segment", json_count_or_null(r->segment),
+        "heating_number", json_count_or_null(r->heating), "used", r->used, "reason",
+        ce_json_text(r->reason), "date", ce_json_text(r->date), "note", ce_json_text(r->note),
+        "reduced_K", ce_json_number(r->reduced_K), "flags", flags);
 }
 
 static json_t *json_sample(const ce_series *series, const ce_sample *s)
@@ -185,17 +200,27 @@ static json_t *json_sample(const ce_series *series, const ce_sample *s)
                      "sd_K", ce_json_number(s->sd_K), "rows", rows);
 }
 
+json_t *ce_json_rate_reduction(const ce_series *series)
+{
+    if (isnan(series->rate_slope_K_decade)) return json_null();
+    return json_pack("{s:o,s:o,s:o,s:o}", "to_K_min", ce_json_number(series->reduce_to_K_min),
+                     "slope_K_decade", ce_json_number(series->rate_slope_K_decade), "u_K_decade",
+                     ce_json_number(series->rate_slope_u_K), "nu",
+                     ce_json_number(series->rate_slope_nu));
+}
+
 ce_status ce_write_series_json(const ce_series *series, FILE *to)
 {
     json_t *samples = json_array();
     for (size_t k = 0; k < series->n_samples; k++)
         (void)json_array_append_new(samples, json_sample(series, &series->sample[k]));
     return ce_json_write(
-        json_pack("{s:s,s:o,s:o,s:s,s:o,s:s,s:o,s:o,s:o}", "schema", "chainend.series/1", "polymer",
-                  ce_json_text(series->polymer), "scope", ce_json_text(series->scope),
+        json_pack("{s:s,s:o,s:o,s:s,s:o,s:s,s:o,s:o,s:o,s:o}", "schema", "chainend.series/1",
+                  "polymer", ce_json_text(series->polymer), "scope", ce_json_text(series->scope),
                   "construction", ce_construction_name(series->construction), "rate_K_min",
                   ce_json_number(series->rate_K_min), "history", ce_history_name(series->history),
                   "run_sd_K", ce_json_number(series->run_sd_K), "run_nu",
-                  ce_json_number(series->run_nu), "samples", samples),
+                  ce_json_number(series->run_nu), "rate_reduction", ce_json_rate_reduction(series),
+                  "samples", samples),
         to);
 }

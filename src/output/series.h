@@ -7,10 +7,16 @@
 
 #include "output/document.h"
 
+#include <jansson.h>
+
 CE_DOCUMENT(series, ce_series)
 
 /* One line: "half_step at 10 K/min, history erased". */
 void ce_write_definition(ce_construction construction, double rate_K_min, ce_history history,
                          FILE *to);
+
+/* How rates were reduced: a line of text, or nothing; an object, or null. */
+void ce_write_rate_reduction(const ce_series *series, FILE *to);
+json_t *ce_json_rate_reduction(const ce_series *series);
 
 #endif

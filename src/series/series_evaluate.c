@@ -78,6 +78,39 @@ static void drop_first_heating_flag(ce_series_row *row)
     row->n_flags = kept;
 }
 
+static double reference_rate(const ce_series *series)
+{
+    return isnan(series->reduce_to_K_min) ? series->rate_K_min : series->reduce_to_K_min;
+}
+
+/* A series does not mix rates unless it is told to reduce them. Rates that rows state are judged all
+ * at once, before anything is evaluated. */
+static ce_status check_stated_rates(ce_series *series, ce_messages *messages, ce_error *err)
+{
+    const double asked = reference_rate(series);
+    double want = asked;
+    bool mixed = false;
+    for (size_t i = 0; i < series->n_rows; i++) {
+        const ce_series_row *row = &series->row[i];
+        if (row->role == CE_LEFT_OUT || isnan(row->rate_K_min)) continue;
+        if (isnan(want)) want = row->rate_K_min; /* the first sets it */
+        if (!isnan(series->reduce_to_K_min) || fabs(row->rate_K_min / want - 1.0) <= RATE_TOLERANCE)
+            continue;
+        mixed = true;
+        if (ce_messages_say(messages, CE_ERROR, series->path, row->line, 0,
+                            "this row was measured at %g K/min, the series at %g K/min: leave it "
+                            "out, split the series, or have all reduced to one rate "
+                            "(--reduce-to)",
+                            row->rate_K_min, want) != CE_OK)
+            return CE_E_NOMEM;
+    }
+    if (mixed)
+        return ce_fail_at(err, CE_E_DOMAIN, series->path, 0, 0,
+                          "the series cannot be used until what is named above is mended");
+    series->rate_K_min = want;
+    return CE_OK;
+}
+
 /* What was measured another way than the series says must not be averaged with the rest. */
 static ce_status check_agreement(ce_series *series, ce_series_row *row, const ce_evaluation *e,
                                  ce_messages *messages)
@@ -85,7 +118,7 @@ static ce_status check_agreement(ce_series *series, ce_series_row *row, const ce
     const ce_segment *s = &e->found.segment;
     double rate = fabs(s->rate_K_min);
     if (isnan(series->rate_K_min)) series->rate_K_min = rate; /* the first run sets it */
-    if (fabs(rate / series->rate_K_min - 1.0) > RATE_TOLERANCE)
+    if (isnan(series->reduce_to_K_min) && fabs(rate / series->rate_K_min - 1.0) > RATE_TOLERANCE)
         return leave_out(series, row, messages, "measured at %.3g K/min, the series at %.3g K/min",
                          rate, series->rate_K_min);
     if (series->history == CE_HISTORY_ERASED && heatings_in(e->run) > 1 &&
@@ -156,7 +189,8 @@ static ce_status average(const ce_series *series, ce_sample *s)
     s->tg_K = calloc(s->n_rows, sizeof *s->tg_K);
     s->tg_u_K = calloc(s->n_rows, sizeof *s->tg_u_K);
     if (s->tg_K == NULL || s->tg_u_K == NULL) return CE_E_NOMEM;
-    double sum = 0.0, squares = 0.0, readings = 0.0;
+    double sum = 0.0, squares = 0.0, readings = 0.0, decades = 0.0;
+    const bool reduced = !isnan(series->rate_slope_K_decade);
     for (size_t i = 0; i < s->n_rows; i++) {
         const ce_series_row *row = &series->row[s->row[i]];
         if (!row->used) continue;
@@ -164,9 +198,12 @@ static ce_status average(const ce_series *series, ce_sample *s)
         /* what a reading says of itself is not the scatter of repeated runs: only stated ones count */
         s->tg_u_K[s->n_used++] = row->run == NULL ? row->tg_u_K : (double)NAN;
         sum += row->tg_K;
+        if (reduced && !isnan(row->rate_K_min))
+            decades += log10(row->rate_K_min / series->rate_K_min);
         readings += row->run == NULL ? (double)NAN : row->tg_u_K * row->tg_u_K;
     }
     s->mean_K = s->n_used > 0 ? sum / (double)s->n_used : (double)NAN;
+    s->rate_decades = s->n_used > 0 ? decades / (double)s->n_used : 0.0;
     s->reading_u_K = s->n_used > 0 ? sqrt(readings / (double)s->n_used) : (double)NAN;
     for (size_t i = 0; i < s->n_used; i++)
         squares += (s->tg_K[i] - s->mean_K) * (s->tg_K[i] - s->mean_K);
@@ -188,25 +225,32 @@ static void pool(ce_series *series)
     series->run_sd_K = series->run_nu > 0.0 ? sqrt(squares / series->run_nu) : (double)NAN;
 }
 
+ce_status ce_series_average(ce_series *series)
+{
+    for (size_t k = 0; k < series->n_samples; k++) {
+        ce_sample *s = &series->sample[k];
+        free(s->tg_K);
+        free(s->tg_u_K);
+        s->tg_K = s->tg_u_K = NULL;
+        s->n_used = 0;
+        if (average(series, s) != CE_OK) return CE_E_NOMEM;
+    }
+    pool(series);
+    return CE_OK;
+}
+
 ce_status ce_series_evaluate(ce_series *series, const ce_run_options *reading,
                              const ce_transition_options *how, ce_progress progress, void *context,
                              ce_messages *messages, ce_error *err)
 {
-    ce_status st = CE_OK;
+    ce_status st = check_stated_rates(series, messages, err);
+    if (st == CE_E_DOMAIN) return st;
     for (size_t i = 0; i < series->n_rows && st == CE_OK; i++) {
         ce_series_row *row = &series->row[i];
         if (progress != NULL) progress(context, i + 1, series->n_rows, row->run);
         st = evaluate_row(series, row, reading, how, messages);
         if (st == CE_OK) st = say_left_out(row);
     }
-    for (size_t k = 0; k < series->n_samples && st == CE_OK; k++) {
-        free(series->sample[k].tg_K);
-        free(series->sample[k].tg_u_K);
-        series->sample[k].tg_K = series->sample[k].tg_u_K = NULL;
-        series->sample[k].n_used = 0;
-        st = average(series, &series->sample[k]);
-    }
-    if (st != CE_OK) return ce_fail(err, st, "%s", ce_status_text(st));
-    pool(series);
-    return CE_OK;
+    if (st == CE_OK) st = ce_series_average(series);
+    return st == CE_OK ? CE_OK : ce_fail(err, st, "%s", ce_status_text(st));
 }

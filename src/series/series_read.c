@@ -63,14 +63,24 @@ static ce_status set_construction(ce_series *s, const char *value, ce_error *err
     return CE_OK;
 }
 
+static ce_status positive_rate(double *to, const char *value, ce_error *err)
+{
+    double rate;
+    ce_status st = ce_parse_value(value, '.', CE_DIM_RATE, NULL, &rate, NULL, err);
+    if (st != CE_OK) return st;
+    if (!(rate > 0.0)) return ce_fail(err, CE_E_DOMAIN, "rate '%.40s' is not above zero", value);
+    *to = rate;
+    return CE_OK;
+}
+
 static ce_status set_rate(ce_series *s, const char *value, ce_error *err)
 {
-    ce_status st = ce_parse_value(value, '.', CE_DIM_RATE, NULL, &s->rate_K_min, NULL, err);
-    if (st == CE_OK && !(s->rate_K_min > 0.0)) {
-        s->rate_K_min = (double)NAN;
-        st = ce_fail(err, CE_E_DOMAIN, "rate '%.40s' is not above zero", value);
-    }
-    return st;
+    return positive_rate(&s->rate_K_min, value, err);
+}
+
+static ce_status set_reduce_to(ce_series *s, const char *value, ce_error *err)
+{
+    return positive_rate(&s->reduce_to_K_min, value, err);
 }
 
 static ce_status set_history(ce_series *s, const char *value, ce_error *err)
@@ -123,15 +133,11 @@ static const struct {
     const char *key;
     ce_status (*set)(ce_series *series, const char *value, ce_error *err);
 } settings[] = {
-    {"polymer", set_polymer},
-    {"scope", set_scope},
-    {"construction", set_construction},
-    {"rate", set_rate},
-    {"history", set_history},
-    {"segment", set_segment},
-    {"temperature_correction", set_correction},
-    {"mn_common_u", set_common_u},
-    {"level", set_level},
+    {"polymer", set_polymer},           {"scope", set_scope},
+    {"construction", set_construction}, {"rate", set_rate},
+    {"reduce_to", set_reduce_to},       {"history", set_history},
+    {"segment", set_segment},           {"temperature_correction", set_correction},
+    {"mn_common_u", set_common_u},      {"level", set_level},
 };
 
 /* Settings compare like column names: case, blanks, '_' and '-' do not count. */
@@ -265,28 +271,6 @@ static ce_status check_definition(ce_series *series, ce_messages *messages, bool
                            "taken as half_step");
 }
 
-/* A series refuses to mix rates: 5 % of a rate is 0.02 decades, some 0.06 K. */
-static ce_status check_rates(ce_series *series, ce_messages *messages, bool *faulty)
-{
-    const ce_series_row *first = NULL;
-    for (size_t i = 0; i < series->n_rows; i++) {
-        const ce_series_row *row = &series->row[i];
-        if (row->role == CE_LEFT_OUT || isnan(row->rate_K_min)) continue;
-        if (first == NULL) first = row;
-        double want = isnan(series->rate_K_min) ? first->rate_K_min : series->rate_K_min;
-        if (fabs(row->rate_K_min / want - 1.0) <= 0.05) continue;
-        *faulty = true;
-        if (ce_messages_say(
-                messages, CE_ERROR, series->path, row->line, 0,
-                "this row was measured at %g K/min, the series at %g K/min: one series has "
-                "one rate (leave the row out, or split the series)",
-                row->rate_K_min, want) != CE_OK)
-            return CE_E_NOMEM;
-    }
-    if (isnan(series->rate_K_min) && first != NULL) series->rate_K_min = first->rate_K_min;
-    return CE_OK;
-}
-
 /* ---- the whole ---------------------------------------------------------------------------- */
 
 /* Run paths are relative to where the series file is. */
@@ -332,7 +316,6 @@ static ce_status gather(ce_series *series, ce_messages *messages, bool *faulty)
         st = check_sample(series, &series->sample[k], messages, faulty);
     if (st == CE_OK) st = check_duplicates(series, messages, faulty);
     if (st == CE_OK) st = check_definition(series, messages, faulty);
-    if (st == CE_OK) st = check_rates(series, messages, faulty);
     return st;
 }
 
@@ -381,6 +364,10 @@ static void clear(ce_series *series)
 {
     *series = (ce_series){.construction = CE_HALF_STEP,
                           .rate_K_min = (double)NAN,
+                          .reduce_to_K_min = (double)NAN,
+                          .rate_slope_K_decade = (double)NAN,
+                          .rate_slope_u_K = (double)NAN,
+                          .rate_slope_nu = (double)NAN,
                           .mn_common_u_rel = (double)NAN,
                           .level = (double)NAN,
                           .run_sd_K = (double)NAN};

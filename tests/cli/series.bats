@@ -13,7 +13,7 @@ load common
     run_it series --format csv "$data/series/certified-mn.csv"
     expect_status 0
     [ "$(head -n 1 out.txt | cut -d, -f1-4)" = "line,sample,role,mn_g_mol" ]
-    [ "$(sed -n 2p out.txt)" = "6,S1,standard,1930,96.5,,2,,297.78,,half_step,10,,,yes,,," ]
+    [ "$(sed -n 2p out.txt)" = "6,S1,standard,1930,96.5,,2,,297.78,,half_step,10,,,yes,,,,0" ]
     run_it series --format json "$data/series/certified-mn.csv"
     [ "$(jq -r .schema out.txt)" = "chainend.series/1" ]
     close .run_sd_K 0.4840497564 1e-9
