@@ -106,3 +106,66 @@ load common
     LOCPATH=$PWD LC_ALL=de_DE.UTF-8 "$CHAINEND" fit --format json "$data/series/exact-mn.csv" > comma.txt
     cmp plain.txt comma.txt
 }
+
+# Slope and its uncertainty: analysis of covariance with one slope, computed with numpy for the same numbers.
+@test "mixed heating rates are refused, or reduced to one when asked" {
+    run_it fit "$data/series/mixed-rates.csv"
+    expect_status 3
+    expect_in "$err" "mixed-rates.csv:6: this row was measured at 20 K/min" "--reduce-to"
+    run_it fit --reduce-to 10K/min --format json "$data/series/mixed-rates.csv"
+    expect_status 0
+    close .rate_reduction.slope_K_decade 4.152410118609179 1e-9
+    close .rate_reduction.u_K_decade 0.696247690664298 1e-9
+    close .rate_reduction.nu 7 0
+    close .run_nu 7 0
+    close .rate_K_min 10 0
+    jq -e '.parameters[0].u_common > 0.05' out.txt
+    # the same from a line in the file
+    sed 's/^# history/# reduce_to: 10 K\/min\n# history/' "$data/series/mixed-rates.csv" > line.csv
+    "$CHAINEND" fit --format json line.csv | cmp - out.txt
+    run_it series --reduce-to 10K/min --format csv "$data/series/mixed-rates.csv"
+    expect_status 0
+    [ "$(head -n 1 out.txt | sed 's/.*,//')" = reduced_K ]
+    awk -F, 'NR > 1 { if ($12 == 10 && $NF != 0) exit 1; if ($12 == 20 && !($NF > 1)) exit 1 }' out.txt
+}
+
+@test "a rate that is not known cannot be reduced" {
+    sed 's/, 20$/,/; s/, 40$/,/' "$data/series/mixed-rates.csv" > hole.csv
+    run_it fit --reduce-to 20K/min hole.csv
+    expect_status 3
+    expect_in "$err" "its heating rate is not known" "hole.csv:6"
+}
+
+@test "resampling is a diagnostic that the seed makes reproducible" {
+    run_it fit --resamples 500 --seed 7 --format json "$data/series/certified-mn.csv"
+    expect_status 0
+    cp out.txt first.txt
+    run_it fit --resamples 500 --seed 7 --format json "$data/series/certified-mn.csv"
+    cmp out.txt first.txt
+    [ "$(jq .resampled.n out.txt)" = 500 ]
+    jq -e '.resampled.parameters[0] | .bca_low < .bca_high' out.txt
+    run_it fit --resamples 500 --seed 8 --format json "$data/series/certified-mn.csv"
+    ! cmp -s out.txt first.txt
+    run_it fit --seed x "$data/series/certified-mn.csv"
+    expect_status 2
+    expect_in "$err" "--seed"
+}
+
+# Paule-Mandel on the York sums of the frozen series: r = 0.05827751445 (computed with numpy and SciPy).
+@test "excess scatter in Mn can be asked for, or turned off" {
+    run_it fit --excess multiplicative --format json "$data/series/certified-mn.csv"
+    expect_status 0
+    close .excess.r 0.05827751445 1e-8
+    [ "$(jq -r .excess.model out.txt)" = multiplicative ]
+    run_it fit --excess none --format json "$data/series/certified-mn.csv"
+    close .excess.r 0 0
+    run_it fit --excess some "$data/series/certified-mn.csv"
+    expect_status 2
+}
+
+@test "the uncertainty of the temperature scale is carried as common" {
+    run_it fit --tg-common-u 0.3 --format json "$data/series/certified-mn.csv"
+    expect_status 0
+    close '.parameters[0].u_common' 0.3 1e-9
+    jq -e '.parameters[1].u_common < 1e-6' out.txt
+}

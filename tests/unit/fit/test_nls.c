@@ -8,6 +8,7 @@
 #include "check.h"
 
 #include "fit/curves.h"
+#include "fit/series.h"
 #include "fit/stats.h"
 
 static double misra1a(const double *b, const double *x, double *g)
@@ -260,6 +261,55 @@ static void puromycin(void **state)
     ce_nls_free(fit);
 }
 
+/* The exact leave-one-out sum, which the tangent plane's ce_press() approximates: 12 refits. The
+ * value was computed with SciPy 1.10.1 for this project. */
+static void puromycin_leave_one_out(void **state)
+{
+    (void)state;
+    curve c = CURVE(puromycin, 2, michaelis);
+    double sum = 0;
+    for (size_t out = 0; out < c.n; out++) {
+        double x[12], y[12], b[2] = {200, 0.1}, g[2];
+        for (size_t i = 0, k = 0; i < c.n; i++)
+            if (i != out) x[k] = c.x[i], y[k++] = c.y[i];
+        curve rest = {.n = c.n - 1, .p = 2, .x = x, .y = y, .f = michaelis};
+        ce_nls *fit = fit_curve(&rest, b);
+        double e = c.y[out] - michaelis(b, c.x + out, g);
+        sum += e * e;
+        ce_nls_free(fit);
+    }
+    assert_digits(sum, 1614.856293, 1e-9);
+}
+
+/* Tg = a - K/(Mn + c): a hyperbola free to leave Flory and Fox, fitted to the single runs of the
+ * frozen series. Computed with SciPy 1.10.1 for this project. */
+static double shifted(const double *b, const double *x, double *g)
+{
+    double u = x[0] + b[2];
+    g[0] = 1, g[1] = -1 / u, g[2] = b[1] / (u * u);
+    return b[0] - b[1] / u;
+}
+
+static void shifted_hyperbola(void **state)
+{
+    (void)state;
+    const struct {
+        const double *mn;
+        const double (*tg)[FF8_RUNS];
+        double rss, aicc;
+    } set[] = {{ff8a_mn, ff8a_tg, 11.29213378, 60.11957341},
+               {ff8b_mn, ff8b_tg, 8.867438332, 54.3182837}};
+    for (size_t k = 0; k < 2; k++) {
+        double x[24], y[24], b[3] = {388, 1.8e5, 1};
+        for (size_t i = 0; i < 24; i++) x[i] = set[k].mn[i / 3], y[i] = set[k].tg[i / 3][i % 3];
+        curve c = {.n = 24, .p = 3, .x = x, .y = y, .f = shifted};
+        ce_nls *fit = fit_curve(&c, b);
+        assert_digits(fit->sum, set[k].rss, 1e-9);
+        assert_digits(ce_aicc(ce_log_likelihood(fit->sum, 24), 4, 24), set[k].aicc, 1e-9);
+        ce_nls_free(fit);
+    }
+}
+
 static void bod(void **state)
 {
     (void)state;
@@ -346,6 +396,8 @@ int main(void)
         cmocka_unit_test(strd),
         cmocka_unit_test(pontius),
         cmocka_unit_test(puromycin),
+        cmocka_unit_test(puromycin_leave_one_out),
+        cmocka_unit_test(shifted_hyperbola),
         cmocka_unit_test(bod),
         cmocka_unit_test(profiles_of_strd),
         cmocka_unit_test(rank_and_nonsense_are_failures),
