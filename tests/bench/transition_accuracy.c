@@ -147,20 +147,23 @@ static int rising(const void *a, const void *b)
 
 static void put_row(const outcome *o, size_t n, int k, int class)
 {
-    double *v = calloc(n, sizeof *v), z2 = 0.0, bias = 0.0;
+    double *v = calloc(n, sizeof *v), *z = calloc(n, sizeof *z), z2 = 0.0, bias = 0.0;
     size_t m = 0;
-    for (size_t i = 0; v != NULL && i < n; i++) {
+    for (size_t i = 0; v != NULL && z != NULL && i < n; i++) {
         if (o[i].class != class || o[i].refused || !isfinite(o[i].error[k])) continue;
+        z[m] = fabs(o[i].error[k] / o[i].u[k]);
         v[m++] = fabs(o[i].error[k]);
         bias += o[i].error[k];
         z2 += o[i].error[k] * o[i].error[k] / (o[i].u[k] * o[i].u[k]);
     }
     if (m > 0) {
         qsort(v, m, sizeof *v, rising);
-        printf("%-12s%-14s%5zu%9.3f%9.3f%9.3f%9.3f%11.2f\n",
+        qsort(z, m, sizeof *z, rising);
+        printf("%-12s%-14s%5zu%9.3f%9.3f%9.3f%9.3f%11.2f%8.2f\n",
                ce_construction_name((ce_construction)k), class_name[class], m, bias / (double)m,
-               v[m / 2], v[(size_t)(0.95 * (double)m)], v[m - 1], sqrt(z2 / (double)m));
+               v[m / 2], v[(size_t)(0.95 * (double)m)], v[m - 1], sqrt(z2 / (double)m), z[m / 2]);
     }
+    free(z);
     free(v);
 }
 
@@ -196,10 +199,10 @@ int main(int argc, char **argv)
         refused += o[i].refused;
     }
     printf("%s half: %zu runs, %zu refused, median %.1f ms, 95 %% %.1f ms a "
-           "run\n%-12s%-14s%5s%9s%9s%9s%9s%11s\n",
+           "run\n%-12s%-14s%5s%9s%9s%9s%9s%11s%8s\n",
            judge ? "judging" : "tuning", n, refused, quantile_of_ms(o, n, 0.5),
            quantile_of_ms(o, n, 0.95), "construction", "class", "n", "bias", "median", "95 %",
-           "largest", "rms err/u");
+           "largest", "rms err/u", "median");
     for (int k = 0; k < CE_CONSTRUCTIONS; k++)
         for (int c = 0; c < CLASSES; c++) put_row(o, n, k, c);
     qsort(o, n, sizeof *o, worse);
