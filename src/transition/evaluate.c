@@ -11,6 +11,7 @@ enum { TRACE = 600 };
 static const size_t most_work = 60;    /* iterations after which no other history is tried    */
 static const double most_rough = 0.03; /* what a model may leave over of a step           */
 static const double straight_glass_K = 60.0; /* a glass line is no line over much more            */
+static const double last_K = 1.5; /* of a segment, where the programme may already be turning   */
 static const double least_baseline_K = 10.0; /* beside the step, else the run cuts it off       */
 static const double inexact_start = 0.02;    /* and of a start-up, relative */
 static const double inexact_steps = 1e-3; /* what the model may miss of a step, any cell        */
@@ -96,8 +97,10 @@ static void place_windows(by_windows *s, const ce_transition_options *o, double 
                           double step)
 {
     const ce_curve *c = s->curve;
-    const double first = fmax(c->T[0] + 3.0, s->edge.low_K);
-    const double last = fmin(c->T[c->n - 1] - 1.5, s->edge.high_K);
+    const double off_low = c->cooling ? last_K : CE_START_UP_K;
+    const double off_high = c->cooling ? CE_START_UP_K : last_K;
+    const double first = fmax(c->T[0] + off_low, s->edge.low_K);
+    const double last = fmin(c->T[c->n - 1] - off_high, s->edge.high_K);
     const double tolerance = fmax(0.03 * step, 2.0 * c->noise / sqrt(fmax(2.0 / c->spacing, 1.0)));
     s->glass.high_K = fmax(low, first + 6.0);
     s->glass.low_K = fmax(s->glass.high_K - 10.0, first);
@@ -125,7 +128,8 @@ static ce_status settle_windows(by_windows *s, const ce_place *place,
         return ce_fail(err, CE_E_REFUSED, "the curve does not cross between its baselines");
     for (int pass = 0; pass < 3; pass++) {
         const by_windows before = *s;
-        const double off = clamp(s->width, 2.0, 20.0);
+        /* nothing sharpens a step on cooling: it is twice as wide, but its tails are not longer */
+        const double off = clamp((s->curve->cooling ? 0.5 : 1.0) * s->width, 2.0, 20.0);
         const double low = clamp(s->p.low_K - off, place->low_K - slack, place->low_K + 0.4 * gap);
         const double high = clamp(fmax(s->p.high_K, s->p.at[CE_END]) + 0.5 * s->width + off,
                                   place->high_K - 0.4 * gap, place->high_K + slack);
@@ -535,16 +539,21 @@ static void window_ensemble(const by_windows *s, ce_finding *out)
     out->step_u = hypot(out->step_u, used > 0.0 ? sqrt(2.0 * step / used) : 0.0);
 }
 
+/* Curvature of the curve over the windows as far as it stands out of the noise, in steps. */
+static double sag(const by_windows *s)
+{
+    const double most =
+        fmax(fabs(s->g.bend) - 2.0 * s->g.bend_u, fabs(s->l.bend) - 2.0 * s->l.bend_u);
+    return fmax(most, 0.0) / s->p.step;
+}
+
 static void take_windows(const by_windows *s, const ce_transition_options *o, ce_finding *out)
 {
-    const double sag =
-        fmax(fabs(s->g.bend) - 2.0 * s->g.bend_u, fabs(s->l.bend) - 2.0 * s->l.bend_u);
     const double rest = sqrt(
         fmax(s->g.sd * s->g.sd + s->l.sd * s->l.sd - 2.0 * s->curve->noise * s->curve->noise, 0.0));
     out->points = s->p;
     out->lines = s->lines;
     out->model = false;
-    out->bend = fmax(sag, 0.0) / s->p.step;
     out->rough = rest / s->p.step;
     window_noise(s, out);
     if (o->ensemble) window_ensemble(s, out);
@@ -566,8 +575,7 @@ static void survey(const by_windows *s, ce_finding *out)
         out->points_within += c->w[i];
     out->missing_K =
         fmax(fmax(least_baseline_K - (last - end), least_baseline_K - (on - first)), 0.0);
-    out->event_K = out->range.high_K < fmin(last, s->edge.high_K) - 4.0 ? out->range.high_K - end
-                                                                        : (double)NAN;
+    out->event_K = out->range.high_K < last - 4.0 ? out->range.high_K - end : (double)NAN;
 }
 
 ce_status ce_read_step(const ce_curve *curve, const ce_place *place, ce_window edge,
@@ -594,6 +602,7 @@ ce_status ce_read_step(const ce_curve *curve, const ce_place *place, ce_window e
             st = CE_OK;
             out->glass = s.glass;
             out->liquid = s.liquid;
+            out->bend = sag(&s);
             survey(&s, out);
             out->strength = place->score / fmax(1.0, out->rough / 0.01);
         }

@@ -8,7 +8,7 @@
 
 enum { MOST_TRANSITIONS = 6, LEAST_POINTS = 24 };
 static const double least_range_K = 20.0;
-static const double least_strength = 1.5; /* of the evidence for a step                       */
+static const double least_strength = 1.2; /* of the evidence for a step                       */
 static const double least_share = 0.1;    /* of the strongest step, for a further one            */
 /* The sanity band of a step: 0.15 to 0.65 J/(g K) for an amorphous polymer (ATHAS-type values, from
  * memory); a larger one than this is a sign of another event. */
@@ -209,15 +209,28 @@ static void compare_heatings(const ce_run *run, const ce_segment *s, size_t i,
         ce_add_flag(t, CE_FLAG_HEATINGS_DIFFER, off);
 }
 
+/* Steps against the direction of a segment, when they are more than the last digit of a slow programme
+ * would make: over one in a hundred; else 0. */
+static size_t steps_back(const ce_run *run, const ce_segment *s)
+{
+    const double *T = ce_run_temperature_K(run) + s->first;
+    const double way = s->kind == CE_COOLING ? -1.0 : 1.0;
+    size_t n = 0;
+    for (size_t i = 1; i < s->n; i++) n += way * (T[i] - T[i - 1]) < 0.0;
+    return 100 * n > s->n ? n : 0;
+}
+
 static ce_status hand_over(const ce_run *run, const ce_segment *s, size_t i,
                            const ce_transition_options *o, findings *f, ce_transitions *found,
                            ce_error *err)
 {
+    const size_t back = steps_back(run, &s[i]);
     compare_heatings(run, s, i, o, &f->item[0]);
     for (size_t k = 0; k < f->n; k++) {
         ce_transition *t = &f->item[k];
         if (s[i].kind == CE_HEATING && s[i].nth_of_kind == 1 && !cooled_before(s, i, t))
             ce_add_flag(t, CE_FLAG_FIRST_HEATING, 1.0);
+        if (back > 0) ce_add_flag(t, CE_FLAG_NOT_MONOTONE, (double)back);
         if (ce_run_sign_origin(run) == CE_ORIGIN_GUESSED) ce_add_flag(t, CE_FLAG_SIGN_GUESSED, 0.0);
     }
     found->item = malloc(f->n * sizeof *found->item);

@@ -3,6 +3,24 @@
 
 #include <math.h>
 
+/* Variance of the residuals about line and parabola, raised for their correlation: what is left when
+ * the parabola itself is not taken for noise. */
+static double parabola_variance(const ce_curve *c, size_t a, size_t b, const ce_line *line,
+                                double scale, double size)
+{
+    double square = 0.0, next = 0.0, last = 0.0;
+    for (size_t i = a; i < b; i++) {
+        const double d = c->T[i] - line->ref_K, q = d * d / scale - 1.0;
+        const double r = c->y[i] - ce_line_at(line, c->T[i]) - size * q;
+        square += c->w[i] * r * r;
+        if (i > a) next += sqrt(c->w[i] * c->w[i - 1]) * r * last;
+        last = r;
+    }
+    const double n = (double)(b - a), most = 0.98;
+    const double rho = square > 0.0 ? fmin(fmax(next / square, 0.0), most) : 0.0;
+    return n > 3.0 ? square / (n - 3.0) * (1.0 + rho) / (1.0 - rho) : 0.0;
+}
+
 bool ce_fit_line(const ce_curve *c, ce_window window, ce_fitted_line *fit)
 {
     const size_t a = ce_curve_index(c, window.low_K), b = ce_curve_index(c, window.high_K + 1e-9);
@@ -42,7 +60,8 @@ bool ce_fit_line(const ce_curve *c, ce_window window, ce_fitted_line *fit)
     fit->var_slope = variance * inflate / tt;
     /* over a uniform window of length L, scale = L^2/12 and the sag is that of q times 1.5 */
     fit->bend = qq > 0.0 ? 1.5 * qr / qq : 0.0;
-    fit->bend_u = qq > 0.0 ? 1.5 * sqrt(variance * inflate / qq) : 0.0;
+    fit->bend_u =
+        qq > 0.0 ? 1.5 * sqrt(parabola_variance(c, a, b, &fit->line, scale, qr / qq) / qq) : 0.0;
     return true;
 }
 

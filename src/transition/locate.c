@@ -19,6 +19,7 @@ typedef struct {
     double *T, *y;
     double *sum[5]; /* of t, y, tt, ty, yy up to and without i                                  */
     double spacing, noise, ref_K, ref;
+    double low_K, high_K; /* without the first of the segment: its start-up                      */
     double *all;
 } grid;
 
@@ -45,6 +46,8 @@ static ce_status grid_make(const ce_curve *c, grid *g)
         g->y[g->n] = y / w;
     }
     g->spacing = (g->T[g->n - 1] - g->T[0]) / (double)(g->n - 1);
+    g->low_K = g->T[0] + (c->cooling ? 0.0 : CE_START_UP_K);
+    g->high_K = g->T[g->n - 1] - (c->cooling ? CE_START_UP_K : 0.0);
     g->ref_K = g->T[g->n / 2];
     for (size_t i = 0; i < g->n; i++) scratch[i] = g->y[i];
     g->ref = ce_median(scratch, g->n);
@@ -82,13 +85,22 @@ static ce_line line_over(const grid *g, size_t a, size_t b, double *sd)
     return (ce_line){g->ref_K + t, g->ref + y, slope};
 }
 
+/* How far the curve dips below a line over [a, b): a glass warming up does so by a small part of its
+ * step, a crystallisation by more. */
+static double dip_below(const grid *g, size_t a, size_t b, const ce_line *line)
+{
+    double most = 0.0;
+    for (size_t i = a; i < b; i++) most = fmax(most, ce_line_at(line, g->T[i]) - g->y[i]);
+    return most;
+}
+
 /* The place at T with one gap; score 0 when there is no room or no rise. */
 static ce_place look(const grid *g, double T, double gap, double plausible)
 {
     const double half = 0.5 * gap, len = fmax(10.0, gap);
     const ce_place none = {0};
-    const size_t a = index_of(g, fmax(T - half - len, g->T[0] + 3.0)), b = index_of(g, T - half);
-    const size_t d = index_of(g, T + half), e = index_of(g, T + half + len);
+    const size_t a = index_of(g, fmax(T - half - len, g->low_K)), b = index_of(g, T - half);
+    const size_t d = index_of(g, T + half), e = index_of(g, fmin(T + half + len, g->high_K + 1e-9));
     if (b < a + 5 || e < d + 5) return none;
     if (g->T[b - 1] - g->T[a] < 0.5 * len || g->T[e - 1] - g->T[d] < 0.45 * len) return none;
     double s1, s2;
@@ -101,7 +113,9 @@ static ce_place look(const grid *g, double T, double gap, double plausible)
     const double bend = fabs(right.slope - left.slope) * (len + gap);
     /* on a perfect line the last digits would make steps */
     const double climb = (fabs(left.slope) + fabs(right.slope)) * (len + gap);
-    const double scatter = g->noise + 2.0 * (s1 + s2) + 0.08 * bend + 0.005 * step + 1e-3 * climb;
+    const double dip = fmax(dip_below(g, b, d, &left) - 0.15 * step - 3.0 * g->noise, 0.0);
+    const double scatter =
+        g->noise + 2.0 * (s1 + s2) + 0.08 * bend + 0.005 * step + 1e-3 * climb + 0.2 * dip;
     const double excess = fmax(step / plausible, 1.0);
     return (ce_place){.low_K = T - half,
                       .high_K = T + half,

@@ -12,6 +12,8 @@ typedef struct {
 } ce_place;
 
 #define CE_LEAST_SCORE 3.0
+/* The first of a segment, K: the programme turns there and the signal has not settled. */
+#define CE_START_UP_K 3.0
 
 /* ce_locate - up to room places, best first, none overlapping another.
  *   in   plausible   a step larger than this counts less (the signal's unit; HUGE_VAL = any)

@@ -376,7 +376,9 @@ ce_model ce_model_start(bool cooling, double centre_K, double width_K, double si
     memcpy(m.centre, mean, sizeof mean);
     memcpy(m.shape, mean, sizeof mean);
     /* broad steps go with small Tr^2/h and x: polystyrene to poly(vinyl chloride) on one line */
-    const double broad = fmin(fmax((width_K - 6.0) / 7.0, 0.0), 1.0);
+    /* on cooling nothing sharpens the step: the same glass is twice as wide */
+    const double wide = cooling ? 0.5 * width_K : width_K;
+    const double broad = fmin(fmax((wide - 6.0) / 7.0, 0.0), 1.0);
     m.shape[S_UNIT] = 0.55 - 1.1 * broad;
     m.shape[S_X] = -0.85 - 0.75 * broad;
     return m;

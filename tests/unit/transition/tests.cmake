@@ -1,1 +1,1 @@
-ce_unit_test(transition find construct relax invariance)
+ce_unit_test(transition find construct relax invariance flags)
