@@ -5,6 +5,7 @@
 
 #include "output/file.h"
 #include "text/load.h"
+#include "text/value.h"
 
 #include <math.h>
 #include <stdlib.h>
@@ -39,6 +40,17 @@ ce_status cli_set_scatter(void *to, const char *value, ce_error *err)
     if (!found)
         return ce_fail(err, CE_E_ARG, "'%.30s' is none of repeats, stated, residuals", value);
     *(ce_scatter *)to = s;
+    return CE_OK;
+}
+
+ce_status cli_set_share(void *to, const char *value, ce_error *err)
+{
+    double x;
+    ce_status st = ce_parse_value(value, '.', CE_DIM_FRACTION, NULL, &x, NULL, err);
+    if (st != CE_OK) return st;
+    if (!(x >= 0.0 && x < 1.0))
+        return ce_fail(err, CE_E_DOMAIN, "'%.40s' must lie between 0 and 100 %%", value);
+    *(double *)to = x;
     return CE_OK;
 }
 
@@ -184,6 +196,24 @@ static int from_series(const cli_command *command, const char *path, const ce_by
     return fail_with(command, path, err.code, err.message);
 }
 
+/* Ten molar masses evenly spaced in log over the standards, rounded to two digits. */
+static void fill_range(cli_calibration *c)
+{
+    double low = HUGE_VAL, high = 0.0, mn[CLI_RANGE_ROWS];
+    for (size_t i = 0; i < c->fit.n_points; i++) {
+        low = fmin(low, c->fit.point[i].molar.mn_g_mol);
+        high = fmax(high, c->fit.point[i].molar.mn_g_mol);
+    }
+    if (!(high > low)) return;
+    for (size_t i = 0; i < CLI_RANGE_ROWS; i++) {
+        const double x = low * pow(high / low, (double)i / (CLI_RANGE_ROWS - 1));
+        const double unit = pow(10.0, floor(log10(x)) - 1.0);
+        mn[i] = round(x / unit) * unit;
+    }
+    if (ce_working_range(&c->fit, 1, 0.0, CLI_RANGE_ROWS, mn, c->range, NULL) == CE_OK)
+        c->n_range = CLI_RANGE_ROWS;
+}
+
 int cli_calibrate(const cli_command *command, const char *path, const cli_calibrating *c,
                   bool quiet, cli_calibration *calibration)
 {
@@ -199,6 +229,7 @@ int cli_calibrate(const cli_command *command, const char *path, const cli_calibr
     if (ce_ceiling(&calibration->fit, 1, 0.0, &calibration->ceiling_tg_K,
                    &calibration->ceiling_mn_g_mol) != CE_OK)
         calibration->ceiling_tg_K = calibration->ceiling_mn_g_mol = (double)NAN;
+    fill_range(calibration);
     return status;
 }
 

@@ -51,6 +51,8 @@ int cmd_fit(int argc, char **argv)
                             .construction = calibration.series.construction,
                             .rate_K_min = calibration.series.rate_K_min,
                             .history = calibration.series.history,
+                            .n_range = calibration.n_range,
+                            .range = calibration.range,
                             .series = &calibration.series,
                             .polymer = calibration.series.polymer,
                             .ceiling_tg_K = calibration.ceiling_tg_K,
