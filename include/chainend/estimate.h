@@ -196,6 +196,122 @@ CE_API ce_status ce_monte_carlo_mn(const ce_fit *fit, const ce_unknown *unknown,
                                    const ce_monte_carlo_options *options, ce_monte_carlo *result,
                                    ce_error *err);
 
+/* ---- does it still hold? ---------------------------------------------------------------------- */
+
+/* A control sample: its Mn is certified, its Tg was measured again. Arrays are borrowed. */
+typedef struct {
+    const char *name;
+    ce_molar molar;
+    double mn_u_g_mol; /* standard uncertainty of the certificate; NaN = taken as exact          */
+    size_t n;          /* runs, >= 1                                                             */
+    const double *tg_K;
+    const double *day; /* of each run, days from any origin; NULL or NaN = not known             */
+} ce_control;
+
+typedef struct {
+    size_t n;
+    double tg_K, expected_K; /* mean measured; of the calibration at the certified Mn            */
+    double difference_K, u_K, nu; /* measured minus expected; all of its uncertainty             */
+    double normalised; /* difference over its expanded uncertainty: beyond 1 it is one     */
+    double p;          /* two-sided, of this control alone                                 */
+    double own_sd_K;   /* of its runs; NaN below two                                       */
+    bool scattered;    /* its runs scatter more than the standards' (F test, 1 %)          */
+} ce_control_result;
+
+/* One run of a control on the control chart. */
+typedef struct {
+    size_t control;
+    double day, difference_K;
+    double z;             /* difference over its standard uncertainty                           */
+    bool warning, action; /* beyond 2; beyond 3, or the second of three successive beyond 2 on one
+                             side                                                              */
+} ce_chart_point;
+
+typedef struct {
+    double level;
+    size_t n;
+    ce_control_result *item;            /* n, owned                                            */
+    double shift_K, shift_u_K, shift_p; /* common to all controls, weighted mean               */
+    double limit_p;                     /* each p below it speaks against the calibration      */
+    size_t n_chart;
+    ce_chart_point *chart; /* dated runs by date, owned                           */
+    size_t n_warnings, n_actions;
+    double drift_K_year, drift_u_K_year, drift_nu,
+        drift_p; /* NaN: fewer than three dates         */
+    bool holds; /* no p below the limit and no action                                             */
+} ce_check;
+
+/* ce_check_calibration - controls measured again against a calibration.
+ *   Each difference with the uncertainty of the curve, the certificate and the runs; normalised as E_n
+ *   (ISO 13528:2022, from memory) at level (0 = the fit's). The verdict takes all of them and their
+ *   common shift together (Bonferroni). Chart of single runs with warning limits at 2 and action
+ *   limits at 3 standard uncertainties (ISO 7870-2:2013, from memory), drift as one slope over the
+ *   dates common to all controls, against the run scatter of the calibration.
+ *   ret  CE_OK | CE_E_ARG (no control, a control without runs) | CE_E_DOMAIN | CE_E_NOMEM; out is
+ *        released with ce_check_free() */
+CE_API ce_status ce_check_calibration(const ce_fit *fit, size_t n, const ce_control *control,
+                                      double level, ce_check *check, ce_error *err);
+CE_API void ce_check_free(ce_check *check);
+
+/* ---- planning ------------------------------------------------------------------------------- */
+
+typedef struct {
+    double want;     /* wanted half-width of the interval over Mn, e.g. 0.1; no default   */
+    double mn_u_rel; /* of certificates of new standards (default 0.05)                   */
+    double low_g_mol,
+        high_g_mol; /* where new standards may lie (default: as the standards)       */
+    size_t
+        runs_per_standard; /* of a new standard (default 3)                                     */
+    size_t unknown_runs;   /* of the unknown, now (default 1)                                   */
+    size_t
+        most_unknown_runs; /* at most (default 12)                                              */
+    double standard_cost;  /* of a new standard besides its runs, in runs (default 5)           */
+    size_t most_steps;     /* default 40                                                        */
+    double level;          /* 0 = the fit's                                                     */
+} ce_plan_options;
+CE_API ce_plan_options ce_plan_options_default(void);
+
+typedef enum { CE_PLAN_UNKNOWN_RUN, CE_PLAN_STANDARD_RUN, CE_PLAN_NEW_STANDARD } ce_plan_kind;
+typedef struct {
+    ce_plan_kind kind;
+    size_t point; /* existing standard of the fit, for a further run of it                      */
+    double
+        mn_g_mol; /* of the standard, old or new                                                */
+    double cost;  /* in runs                                                                    */
+    double worst,
+        mean_square; /* half-width over Mn after it: largest over the targets; criterion */
+} ce_plan_step;
+typedef struct {
+    double mn_g_mol, tg_K;
+    double now,
+        then;     /* half-width over Mn, first order                                           */
+    double floor; /* with a perfect calibration and the most runs of the unknown               */
+} ce_plan_target;
+typedef struct {
+    double level, want;
+    size_t n_targets;
+    ce_plan_target *target; /* owned */
+    size_t n_steps;
+    ce_plan_step *step;  /* owned; in the order to take them                                    */
+    size_t unknown_runs; /* after all of them                                                   */
+    bool met;
+    size_t limiting; /* target with the largest half-width at the end                       */
+    bool reachable;  /* no floor above the wish                                             */
+} ce_plan;
+
+/* ce_plan_make - what to measure so that Mn is known well enough where it matters.
+ *   Step by step the one of all possible ones (a further run of the unknown, of a standard, a new
+ *   standard anywhere in the range with a certificate of its own) that lowers the mean square of the
+ *   half-widths at the targets most for its cost: V-optimality, the criterion that averages the
+ *   variance of prediction over the points that matter (Atkinson, Donev, Tobias, Optimum Experimental
+ *   Designs, with SAS (2007), ch 10, from memory), sequentially (Wynn, Ann. Math. Stat. 41 (1970)
+ *   1655, from memory). Half-widths are first-order ones: t u / |dTg/dMn| / Mn.
+ *   in   n molar masses (linear chains, dispersity as unknown: 1); options
+ *   ret  CE_OK (met or not) | CE_E_ARG | CE_E_DOMAIN | CE_E_NOMEM; out released with ce_plan_free() */
+CE_API ce_status ce_plan_make(const ce_fit *fit, size_t n, const double *mn_g_mol,
+                              const ce_plan_options *options, ce_plan *plan, ce_error *err);
+CE_API void ce_plan_free(ce_plan *plan);
+
 #ifdef __cplusplus
 }
 #endif

@@ -16,6 +16,7 @@ cli_calibrating cli_calibrating_default(void)
     return (cli_calibrating){.reading = ce_run_options_default(),
                              .how = ce_transition_options_default(),
                              .take = CE_CONSTRUCTIONS,
+                             .expect = CE_CONSTRUCTIONS,
                              .reduce_to_K_min = (double)NAN,
                              .fit = ce_fit_options_default(),
                              .level = (double)NAN};
@@ -72,6 +73,20 @@ ce_status cli_set_fit_seed(void *to, const char *value, ce_error *err)
 
 enum { MOST_BYTES = 256 << 20 };
 
+/* What counts as the Tg: as an option says, or as the calibration does that the series is for. */
+static ce_status settle_construction(const cli_calibrating *c, ce_series *series, ce_error *err)
+{
+    if (c->take != CE_CONSTRUCTIONS) series->construction = c->take;
+    if (c->expect == CE_CONSTRUCTIONS) return CE_OK;
+    if (series->construction_stated && series->construction != c->expect)
+        return ce_fail_at(err, CE_E_REFUSED, series->path, 0, 0,
+                          "its Tg is the %s, the calibration's the %s: they cannot be compared",
+                          ce_construction_name(series->construction),
+                          ce_construction_name(c->expect));
+    series->construction = c->expect;
+    return CE_OK;
+}
+
 /* The series file, evaluated, from its bytes. */
 static int evaluate_series(const cli_command *command, const char *path, const ce_bytes *bytes,
                            const cli_calibrating *c, bool quiet, ce_series *series)
@@ -79,8 +94,8 @@ static int evaluate_series(const cli_command *command, const char *path, const c
     ce_messages messages = {0};
     ce_error err = CE_ERROR_INIT;
     ce_status st = ce_series_read_memory(bytes->data, bytes->n, path, series, &messages, &err);
+    if (st == CE_OK) st = settle_construction(c, series, &err);
     if (st == CE_OK) {
-        if (c->take != CE_CONSTRUCTIONS) series->construction = c->take;
         if (!isnan(c->reduce_to_K_min)) series->reduce_to_K_min = c->reduce_to_K_min;
         cli_progress progress = cli_progress_begin("runs", quiet);
         st = ce_series_evaluate(series, &c->reading, &c->how, cli_progress_step, &progress,

@@ -16,6 +16,7 @@ typedef struct {
     ce_run_options reading;
     ce_transition_options how;
     ce_construction take;   /* CE_CONSTRUCTIONS = as the series says */
+    ce_construction expect; /* a series that states another is refused; CE_CONSTRUCTIONS = any */
     double reduce_to_K_min; /* NaN = as the series says */
     ce_fit_options fit;
     double level; /* NaN = as the series says, else the fit's default */

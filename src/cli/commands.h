@@ -10,6 +10,8 @@
     X(series, "evaluate a series, show the pairs of Mn and Tg")                                    \
     X(fit, "fit the Tg-Mn relation, with intervals and diagnostics")                               \
     X(estimate, "Mn from Tg, Tg from Mn, with an interval")                                        \
+    X(check, "does a calibration still hold? control samples measured again")                      \
+    X(plan, "which standards and runs would narrow Mn most where it matters")                      \
     X(figure, "a gnuplot script with its data inside, and the picture")                            \
     X(simulate, "synthetic runs and series with known truth")
 

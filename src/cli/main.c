@@ -9,6 +9,7 @@
 #include <gsl/gsl_errno.h>
 #include <gsl/gsl_version.h>
 #include <jansson.h>
+#include <nettle/version.h>
 #include <string.h>
 
 typedef struct {
@@ -45,10 +46,11 @@ static int put_usage(FILE *to, int status)
 static int put_version(void)
 {
     printf("chainend %s\nGSL      %s (built against %s)\nlibcsv   %d.%d.%d\njansson  %s (built "
-           "against %s)\n"
+           "against %s)\nnettle   %d.%d\n"
            "compiler %s\n",
            ce_version(), gsl_version, GSL_VERSION, CSV_MAJOR, CSV_MINOR, CSV_RELEASE,
-           jansson_version_str(), JANSSON_VERSION, __VERSION__);
+           jansson_version_str(), JANSSON_VERSION, NETTLE_VERSION_MAJOR, NETTLE_VERSION_MINOR,
+           __VERSION__);
     return XIT_OK;
 }
 

@@ -1,6 +1,1 @@
-ce_unit_test(estimate fieller invert)
-if(NOT EXISTS "${PROJECT_SOURCE_DIR}/src/fit/CMakeLists.txt")
-  foreach(t fieller invert)
-    target_sources(test_estimate_${t} PRIVATE estimate/fit_stub.c)
-  endforeach()
-endif()
+ce_unit_test(estimate fieller invert check plan montecarlo)

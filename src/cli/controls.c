@@ -1,0 +1,83 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+#include "cli/controls.h"
+
+#include <math.h>
+#include <stdlib.h>
+#include <string.h>
+
+/* Days from civil, proleptic Gregorian calendar (ISO 8601). */
+double cli_day(const char *date)
+{
+    int y, m, d, used = 0;
+    static const int before[] = {0, 31, 59, 90, 120, 151, 181, 212, 243, 273, 304, 334};
+    static const int length[] = {31, 29, 31, 30, 31, 30, 31, 31, 30, 31, 30, 31};
+    if (date == NULL || sscanf(date, "%4d-%2d-%2d%n", &y, &m, &d, &used) != 3 ||
+        date[used] != '\0' || used != 10 || m < 1 || m > 12 || d < 1 || d > length[m - 1])
+        return (double)NAN;
+    const bool leap = (y % 4 == 0 && y % 100 != 0) || y % 400 == 0;
+    if (m == 2 && d == 29 && !leap) return (double)NAN;
+    const int past = (y - 1) / 4 - (y - 1) / 100 + (y - 1) / 400;
+    return 365.0 * (y - 1) + past + before[m - 1] + (m > 2 && leap ? 1 : 0) + d - 719163.0;
+}
+
+static ce_status add(cli_controls *controls, const ce_series *series, const ce_sample *s)
+{
+    const size_t n = controls->n;
+    ce_control *item = reallocarray(controls->item, n + 1, sizeof *item);
+    if (item != NULL) controls->item = item;
+    double **day = reallocarray(controls->day, n + 1, sizeof *day);
+    if (day != NULL) controls->day = day;
+    const char ***date = reallocarray(controls->date, n + 1, sizeof *date);
+    if (date != NULL) controls->date = date;
+    if (item == NULL || day == NULL || date == NULL) return CE_E_NOMEM;
+    day[n] = calloc(s->n_used, sizeof **day);
+    date[n] = calloc(s->n_used, sizeof **date);
+    controls->n++;
+    if (day[n] == NULL || date[n] == NULL) return CE_E_NOMEM;
+    size_t k = 0;
+    for (size_t i = 0; i < s->n_rows; i++) { /* as the readings of the sample are gathered */
+        const ce_series_row *row = &series->row[s->row[i]];
+        if (!row->used) continue;
+        day[n][k] = cli_day(row->date);
+        date[n][k++] = row->date;
+    }
+    item[n] = (ce_control){.name = s->name,
+                           .molar = {s->mn_g_mol, s->mw_g_mol, s->chain_ends},
+                           .mn_u_g_mol = s->mn_u_g_mol,
+                           .n = s->n_used,
+                           .tg_K = s->tg_K,
+                           .day = day[n]};
+    return CE_OK;
+}
+
+ce_status cli_add_controls(cli_controls *controls, const ce_series *series)
+{
+    ce_status st = CE_OK;
+    for (size_t i = 0; i < series->n_samples && st == CE_OK; i++)
+        if (series->sample[i].role == CE_CONTROL && series->sample[i].n_used > 0)
+            st = add(controls, series, &series->sample[i]);
+    return st;
+}
+
+void cli_controls_free(cli_controls *controls)
+{
+    for (size_t i = 0; i < controls->n; i++) {
+        free(controls->day[i]);
+        free((void *)controls->date[i]);
+    }
+    free(controls->item);
+    free(controls->day);
+    free((void *)controls->date);
+    *controls = (cli_controls){0};
+}
+
+const char **cli_chart_dates(const cli_controls *controls, const ce_check *check)
+{
+    const char **out = calloc(check->n_chart + 1, sizeof *out);
+    for (size_t i = 0; out != NULL && i < check->n_chart; i++) {
+        const ce_chart_point *p = &check->chart[i];
+        for (size_t k = 0; k < controls->item[p->control].n; k++)
+            if (controls->day[p->control][k] == p->day) out[i] = controls->date[p->control][k];
+    }
+    return out;
+}
