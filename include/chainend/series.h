@@ -124,6 +124,14 @@ typedef void (*ce_progress)(void *context, size_t i, size_t n, const char *path)
 CE_API ce_status ce_series_evaluate(ce_series *series, const ce_run_options *reading,
                                     const ce_transition_options *how, ce_progress progress,
                                     void *context, ce_messages *messages, ce_error *err);
+/* ce_series_evaluate_run - evaluate the run of one row again, as ce_series_evaluate() did, and keep its
+ * curve (figures need it).
+ *   ret  as ce_evaluate(); CE_E_ARG when the row has no run */
+CE_API ce_status ce_series_evaluate_run(const ce_series *series, size_t row,
+                                        const ce_run_options *reading,
+                                        const ce_transition_options *how,
+                                        ce_evaluation *evaluation);
+
 /* Means and scatter of the samples and the repeatability, anew from the rows as they stand.
  * CE_OK or CE_E_NOMEM. */
 CE_API ce_status ce_series_average(ce_series *series);

@@ -2,6 +2,7 @@
 #include "cli/controls.h"
 
 #include <math.h>
+#include <stdarg.h>
 #include <stdlib.h>
 #include <string.h>
 
@@ -80,4 +81,78 @@ const char **cli_chart_dates(const cli_controls *controls, const ce_check *check
             if (controls->day[p->control][k] == p->day) out[i] = controls->date[p->control][k];
     }
     return out;
+}
+
+/* ---- against a calibration ---------------------------------------------------------------- */
+
+/* Measured in another way: refused, or allowed by --despite. */
+CE_PRINTF(4, 5)
+static bool refused(const cli_command *command, bool despite, const char *path, const char *fmt,
+                    ...)
+{
+    ce_error err = CE_ERROR_INIT;
+    char text[200];
+    va_list ap;
+    va_start(ap, fmt);
+    (void)vsnprintf(text, sizeof text, fmt, ap);
+    va_end(ap);
+    if (despite) return false;
+    (void)ce_fail_at(&err, CE_E_REFUSED, path, 0, 0,
+                     "%s; --despite overrules, and marks the result", text);
+    cli_error(command, &err);
+    return true;
+}
+
+static bool agrees(const cli_command *command, bool despite, const cli_calibration *c,
+                   const ce_series *s, bool *differs)
+{
+    const double rate = s->rate_K_min, want = c->series.rate_K_min;
+    if (!isnan(rate) && !isnan(want) && fabs(rate / want - 1.0) > 0.05) {
+        *differs = true;
+        if (refused(command, despite, s->path,
+                    "measured at %.3g K/min, the calibration at %.3g K/min", rate, want))
+            return false;
+    }
+    if (s->history != CE_HISTORY_UNSTATED && c->series.history != CE_HISTORY_UNSTATED &&
+        s->history != c->series.history) {
+        *differs = true;
+        if (refused(command, despite, s->path, "its history is %s, the calibration's %s",
+                    ce_history_name(s->history), ce_history_name(c->series.history)))
+            return false;
+    }
+    return true;
+}
+
+int cli_hold(const cli_command *command, const cli_calibrating *calibrating, bool quiet,
+             bool despite, int argc, char **argv, cli_held *b)
+{
+    cli_calibrating how = *calibrating;
+    int status = cli_calibrate(command, argv[0], &how, quiet, &b->calibration);
+    if (status == XIT_FAILED) return status;
+    b->series = calloc((size_t)argc, sizeof *b->series);
+    if (b->series == NULL) return XIT_FAILED;
+    how.expect = b->calibration.series.construction;
+    if (isnan(how.how.glass.low_K)) how.how.glass = b->calibration.glass;
+    if (isnan(how.how.liquid.low_K)) how.how.liquid = b->calibration.liquid;
+    if (how.how.segment == 0) how.how.segment = b->calibration.series.segment;
+    for (int i = 1; i < argc; i++) {
+        const int read = cli_read_series(command, argv[i], &how, quiet, &b->series[b->n]);
+        if (read == XIT_FAILED) return read;
+        if (read == XIT_PART) status = XIT_PART;
+        if (!agrees(command, despite, &b->calibration, &b->series[b->n++], &b->differs))
+            return XIT_FAILED;
+    }
+    ce_status st = CE_OK;
+    for (size_t i = 0; i < b->n && st == CE_OK; i++)
+        st = cli_add_controls(&b->controls, &b->series[i]);
+    if (argc == 1) st = cli_add_controls(&b->controls, &b->calibration.series);
+    return st == CE_OK ? status : XIT_FAILED;
+}
+
+void cli_held_free(cli_held *held)
+{
+    cli_controls_free(&held->controls);
+    for (size_t i = 0; i < held->n; i++) ce_series_free(&held->series[i]);
+    free(held->series);
+    cli_calibration_free(&held->calibration);
 }

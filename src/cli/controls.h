@@ -23,4 +23,20 @@ double cli_day(const char *date);
 /* The text of the date of every point of a chart; the caller's to free(). NULL when out of memory. */
 const char **cli_chart_dates(const cli_controls *controls, const ce_check *check);
 
+/* A calibration with the control samples it is held against, and the series they came from. */
+typedef struct {
+    cli_calibration calibration;
+    size_t n;
+    ce_series *series;
+    cli_controls controls;
+    bool differs; /* measured in another way, and allowed                             */
+} cli_held;
+
+/* path[0] is a calibration, the others series with controls; without others the calibration's own are
+ * taken. despite allows another rate or history. Told on standard error what is wrong. XIT_OK, XIT_PART
+ * or XIT_FAILED; to be released with cli_held_free() in any case. */
+int cli_hold(const cli_command *command, const cli_calibrating *how, bool quiet, bool despite,
+             int n, char **path, cli_held *held);
+void cli_held_free(cli_held *held);
+
 #endif

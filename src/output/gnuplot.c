@@ -32,15 +32,16 @@ void ce_plot_number(FILE *to, double x)
     fprintf(to, "%s ", isfinite(x) ? text : "NaN");
 }
 
-void ce_plot_begin(FILE *to, const char *kind, const char *title, double height)
+static void begin(FILE *to, const char *kind, const char *title, double columns, double height)
 {
     char *clean = ce_text_shown(title, 200);
     fprintf(to,
             "# %s\n"
             "# Figure '%s' of chainend %s. The data are inside; edit what you like.\n"
-            "# To draw it:  gnuplot -e \"set terminal pdfcairo size 8.5cm,%.2fcm font ',8'\" "
-            "THIS_FILE > figure.pdf\n",
-            clean == NULL ? "" : clean, kind, CE_VERSION_TEXT, 8.5 * height);
+            "# To draw it:  gnuplot -e \"set terminal pdfcairo size %.1fcm,%.2fcm font ',8'\" "
+            "THIS_FILE > figure.pdf%s\n",
+            clean == NULL ? "" : clean, kind, CE_VERSION_TEXT, 8.5 * columns,
+            8.5 * columns * height, columns > 1.0 ? CE_PLOT_WIDE : "");
     free(clean);
     fputs("\n"
           "set encoding utf8\n"
@@ -55,6 +56,16 @@ void ce_plot_begin(FILE *to, const char *kind, const char *title, double height)
           "set style line 5 linecolor rgb '#d5d5d5' linewidth 0.8\n"
           "set style line 6 linecolor rgb '#b8400f' linewidth 1.2 pointtype 12 pointsize 0.7\n\n",
           to);
+}
+
+void ce_plot_begin(FILE *to, const char *kind, const char *title, double height)
+{
+    begin(to, kind, title, 1.0, height);
+}
+
+void ce_plot_begin_wide(FILE *to, const char *kind, const char *title, double height)
+{
+    begin(to, kind, title, 2.0, height);
 }
 
 ce_picture ce_picture_of(const char *path)

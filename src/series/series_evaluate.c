@@ -151,6 +151,17 @@ static ce_status take_transition(ce_series *series, ce_series_row *row, const ce
     return check_agreement(series, row, e, messages);
 }
 
+ce_status ce_series_evaluate_run(const ce_series *series, size_t row, const ce_run_options *reading,
+                                 const ce_transition_options *how, ce_evaluation *evaluation)
+{
+    const ce_series_row *r = &series->row[row];
+    *evaluation = (ce_evaluation){.status = CE_E_ARG};
+    if (r->path == NULL) return CE_E_ARG;
+    const ce_run_options run_options = reading_of(r, reading);
+    ce_transition_options options = how_of(series, r, how);
+    return ce_evaluate(r->path, &run_options, &options, true, evaluation);
+}
+
 static ce_status evaluate_row(ce_series *series, ce_series_row *row, const ce_run_options *reading,
                               const ce_transition_options *how, ce_messages *messages)
 {
@@ -159,9 +170,7 @@ static ce_status evaluate_row(ce_series *series, ce_series_row *row, const ce_ru
         return CE_OK;
     }
     ce_evaluation e;
-    ce_run_options run_options = reading_of(row, reading);
-    ce_transition_options options = how_of(series, row, how);
-    ce_status st = ce_evaluate(row->path, &run_options, &options, true, &e);
+    ce_status st = ce_series_evaluate_run(series, (size_t)(row - series->row), reading, how, &e);
     if (st == CE_OK)
         st = take_transition(series, row, &e, messages);
     else if (st != CE_E_NOMEM) {
