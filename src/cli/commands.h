@@ -13,6 +13,7 @@
     X(check, "does a calibration still hold? control samples measured again")                      \
     X(plan, "which standards and runs would narrow Mn most where it matters")                      \
     X(figure, "a gnuplot script with its data inside, and the picture")                            \
+    X(report, "one self-contained HTML page that says everything")                                 \
     X(simulate, "synthetic runs and series with known truth")
 
 #define X(name, summary) int cmd_##name(int argc, char **argv);

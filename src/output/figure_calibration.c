@@ -146,7 +146,8 @@ double ce_figure_calibration(const ce_estimate_result *r, FILE *to)
                 r->ceiling_mn_g_mol / 1000.0);
     }
     put_panel(to, &(panel){"band_log", 1, 1, 2, 2, 3, 4}, unknowns);
-    fputs("unset arrow 1\nunset label 1\nset key inside top right noreverse Right maxcols 1\nunset logscale "
+    fputs("unset arrow 1\nunset label 1\nset key inside top right noreverse Right maxcols 1\nunset "
+          "logscale "
           "x\nset xlabel '1/Mn / (mol/kg)'\n",
           to);
     fprintf(to, "set xrange [%.6g:%.6g]\n", -0.02 * 1000.0 / x.low_mn, 1000.0 / x.low_mn);

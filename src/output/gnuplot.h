@@ -46,4 +46,8 @@ ce_picture ce_picture_of(const char *path);
 ce_status ce_render(const char *script, size_t n, double height, ce_picture kind, const char *path,
                     _Bool *missing, ce_error *err);
 
+/* The same into memory; *bytes is the caller's to free(). */
+ce_status ce_render_memory(const char *script, size_t n, double height, ce_picture kind,
+                           char **bytes, size_t *n_bytes, _Bool *missing, ce_error *err);
+
 #endif

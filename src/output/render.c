@@ -40,20 +40,6 @@ static void terminal_of(char *text, size_t room, ce_picture kind, double columns
                    640.0 * columns, 640.0 * height);
 }
 
-/* The environment, with a date that PDF files are given unless there is one: the same picture is the same
- * bytes (reproducible-builds.org). The caller frees the array. */
-static char **with_fixed_date(void)
-{
-    static char date[] = "SOURCE_DATE_EPOCH=0";
-    size_t n = 0;
-    while (environ[n] != NULL) n++;
-    char **copy = calloc(n + 2, sizeof *copy);
-    if (copy == NULL) return NULL;
-    memcpy((void *)copy, (void *)environ, n * sizeof *copy);
-    if (getenv("SOURCE_DATE_EPOCH") == NULL) copy[n] = date;
-    return copy;
-}
-
 /* The script comes from an unnamed file, the picture goes straight to its own: no pipe, no file name that gnuplot
  * could take for something else. */
 static int spawn(char *terminal, int script, int picture, int messages, pid_t *pid)
@@ -65,9 +51,7 @@ static int spawn(char *terminal, int script, int picture, int messages, pid_t *p
     (void)posix_spawn_file_actions_adddup2(&actions, script, STDIN_FILENO);
     (void)posix_spawn_file_actions_adddup2(&actions, picture, STDOUT_FILENO);
     (void)posix_spawn_file_actions_adddup2(&actions, messages, STDERR_FILENO);
-    char **const plain = with_fixed_date();
-    int code = plain == NULL ? ENOMEM : posix_spawnp(pid, "gnuplot", &actions, NULL, argv, plain);
-    free((void *)plain);
+    int code = posix_spawnp(pid, "gnuplot", &actions, NULL, argv, environ);
     (void)posix_spawn_file_actions_destroy(&actions);
     return code;
 }
@@ -97,42 +81,72 @@ static ce_status draw(FILE *script, FILE *messages, char *terminal, FILE *pictur
     return CE_OK;
 }
 
-/* Drawn into an unnamed file first: when gnuplot fails nothing half is shown. */
-static ce_status show(FILE *script, FILE *messages, char *terminal, bool *missing, ce_error *err)
+/* Everything in an open file from its beginning. */
+static ce_status slurp(FILE *f, char **bytes, size_t *n, ce_error *err)
 {
-    FILE *picture = tmpfile();
-    if (picture == NULL) return ce_fail(err, CE_E_IO, "cannot write a temporary file");
-    ce_status st = draw(script, messages, terminal, picture, missing, err);
-    char block[4096];
-    rewind(picture);
-    for (size_t n; st == CE_OK && (n = fread(block, 1, sizeof block, picture)) > 0;)
-        if (fwrite(block, 1, n, stdout) != n) st = ce_fail(err, CE_E_IO, "cannot write");
-    (void)fclose(picture);
+    if (fseek(f, 0, SEEK_END) != 0) return ce_fail(err, CE_E_IO, "cannot read a temporary file");
+    const long end = ftell(f);
+    rewind(f);
+    *bytes = end < 0 ? NULL : malloc((size_t)end + 1);
+    if (*bytes == NULL) return ce_fail(err, CE_E_NOMEM, "out of memory");
+    *n = fread(*bytes, 1, (size_t)end, f);
+    (*bytes)[*n] = '\0';
+    return CE_OK;
+}
+
+/* A PDF says when it was made; the same figure is to be the same bytes, so it says the beginning of 1970.
+ * The length stays, and with it the table of addresses. */
+static void forget_date(char *bytes, size_t n)
+{
+    static const char key[] = "/CreationDate (D:", never[] = "19700101000000";
+    char *at = memmem(bytes, n, key, sizeof key - 1);
+    if (at == NULL) return;
+    at += sizeof key - 1;
+    if ((size_t)(bytes + n - at) >= sizeof never && strspn(at, "0123456789") == sizeof never - 1)
+        memcpy(at, never, sizeof never - 1);
+}
+
+ce_status ce_render_memory(const char *script, size_t n, double height, ce_picture kind,
+                           char **bytes, size_t *n_bytes, bool *missing, ce_error *err)
+{
+    char terminal[200];
+    const double columns =
+        memmem(script, n, CE_PLOT_WIDE, strlen(CE_PLOT_WIDE)) != NULL ? 2.0 : 1.0;
+    *bytes = NULL;
+    *n_bytes = 0;
+    *missing = false;
+    terminal_of(terminal, sizeof terminal, kind, columns, height);
+    FILE *text = tmpfile(), *messages = tmpfile(), *picture = tmpfile();
+    ce_status st = CE_OK;
+    if (text == NULL || messages == NULL || picture == NULL || fwrite(script, 1, n, text) != n ||
+        fflush(text) != 0 || lseek(fileno(text), 0, SEEK_SET) != 0)
+        st = ce_fail(err, CE_E_IO, "cannot write a temporary file");
+    if (st == CE_OK) st = draw(text, messages, terminal, picture, missing, err);
+    if (st == CE_OK) st = slurp(picture, bytes, n_bytes, err);
+    if (st == CE_OK && kind == CE_PICTURE_PDF) forget_date(*bytes, *n_bytes);
+    if (text != NULL) (void)fclose(text);
+    if (messages != NULL) (void)fclose(messages);
+    if (picture != NULL) (void)fclose(picture);
     return st;
 }
 
+/* Drawn into memory first: when gnuplot fails nothing half is written. */
 ce_status ce_render(const char *script, size_t n, double height, ce_picture kind, const char *path,
                     bool *missing, ce_error *err)
 {
-    char terminal[200];
+    char *bytes;
+    size_t size;
     ce_output output;
-    *missing = false;
-    const double columns =
-        memmem(script, n, CE_PLOT_WIDE, strlen(CE_PLOT_WIDE)) != NULL ? 2.0 : 1.0;
-    terminal_of(terminal, sizeof terminal, kind, columns, height);
-    FILE *text = tmpfile(), *messages = tmpfile();
-    ce_status st = CE_OK;
-    if (text == NULL || messages == NULL || fwrite(script, 1, n, text) != n || fflush(text) != 0 ||
-        lseek(fileno(text), 0, SEEK_SET) != 0)
-        st = ce_fail(err, CE_E_IO, "cannot write a temporary file");
-    if (st == CE_OK && kind == CE_PICTURE_TERMINAL)
-        st = show(text, messages, terminal, missing, err);
-    else if (st == CE_OK && (st = ce_output_begin(&output, path, err)) == CE_OK) {
-        st = draw(text, messages, terminal, output.stream, missing, err);
+    ce_status st = ce_render_memory(script, n, height, kind, &bytes, &size, missing, err);
+    if (st != CE_OK) return st;
+    if (kind == CE_PICTURE_TERMINAL) {
+        if (fwrite(bytes, 1, size, stdout) != size) st = ce_fail(err, CE_E_IO, "cannot write");
+    } else if ((st = ce_output_begin(&output, path, err)) == CE_OK) {
+        if (fwrite(bytes, 1, size, output.stream) != size)
+            st = ce_fail_at(err, CE_E_IO, path, 0, 0, "cannot write");
         if (st == CE_OK) st = ce_output_commit(&output, err);
         ce_output_discard(&output);
     }
-    if (text != NULL) (void)fclose(text);
-    if (messages != NULL) (void)fclose(messages);
+    free(bytes);
     return st;
 }

@@ -5,7 +5,8 @@
 build_packages="gcc make cmake ninja-build pkg-config libgsl-dev libcsv-dev libjansson-dev nettle-dev"
 run_packages="gnuplot-nox"
 test_packages="libcmocka-dev bats python3 python3-scipy r-base-core mandoc valgrind clang clang-format
-  clang-tidy libclang-rt-14-dev locales jq git"
+  clang-tidy libclang-rt-14-dev locales jq git
+  tidy chromium poppler-utils"
 
 say() { printf '%s\n' "$*"; }
 die() { printf '%s\n' "$*" >&2; exit 1; }
