@@ -8,19 +8,26 @@
 
 enum { MOST_CELLS = 4096, MOST_DIFFERENCES = 8192 };
 
-/* Second differences of white noise have six times its variance; the median looks past the step. */
+/* Half of the values are equal to their neighbours: what is left is the resolution of the record, which
+ * is as good as a noise uniform over one step of it. */
+static double resolution_of(const double *y, size_t n)
+{
+    double least = HUGE_VAL;
+    for (size_t i = 1; i < n; i++)
+        if (y[i] != y[i - 1]) least = fmin(least, fabs(y[i] - y[i - 1]));
+    return isfinite(least) ? least / sqrt(12.0) : 0.0;
+}
+
+/* Third differences of white noise have twenty times its variance; what is smooth over four points
+ * they leave out, and the median looks past the rest of the step and of the start-up. */
 static double noise_of(const double *y, size_t n, double *scratch)
 {
     const size_t stride = 1 + n / MOST_DIFFERENCES;
     size_t k = 0;
-    double square = 0.0;
-    for (size_t i = 1; i + 1 < n && k < MOST_DIFFERENCES; i += stride, k++) {
-        scratch[k] = (y[i + 1] - 2.0 * y[i] + y[i - 1]) / sqrt(6.0);
-        square += scratch[k] * scratch[k];
-    }
-    const double rms = k > 0 ? sqrt(square / (double)k) : 0.0;
+    for (size_t i = 0; i + 3 < n && k < MOST_DIFFERENCES; i += stride, k++)
+        scratch[k] = (y[i + 3] - 3.0 * (y[i + 2] - y[i + 1]) - y[i]) / sqrt(20.0);
     const double robust = CE_MAD_TO_SD * ce_mad(scratch, k);
-    return robust > 1e-3 * rms ? robust : rms; /* a coarse resolution makes most of them zero */
+    return robust > 0.0 ? robust : resolution_of(y, n);
 }
 
 ce_status ce_curve_make(size_t n, const double *T, const double *y, bool cooling, ce_curve *curve)
