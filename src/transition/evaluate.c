@@ -8,7 +8,9 @@
 #include <string.h>
 
 enum { TRACE = 600 };
-static const size_t most_work = 60;    /* iterations after which no other history is tried    */
+enum { MOST_TRIED = 5 };               /* histories fitted from, of those listed              */
+static const size_t most_work = 100;   /* iterations after which no other is                  */
+static const double most_prior = 9.0;  /* chi-square of the priors: as many as there are      */
 static const double most_rough = 0.03; /* what a model may leave over of a step           */
 static const double straight_glass_K = 60.0; /* a glass line is no line over much more            */
 static const double last_K = 1.5; /* of a segment, where the programme may already be turning   */
@@ -222,10 +224,17 @@ static bool gradients(by_model *f, modelling *m)
 
 static void weigh_cells(const by_windows *s, ce_cells *cells)
 {
-    /* below the glass window the start-up need not be the exponential of the model */
-    for (size_t i = 0; i < cells->n; i++) {
+    /* below the glass window (on cooling: above the liquid one) the start-up need not be what the
+     * model makes of it; where it crosses the line it is no better known than beside it */
+    double off = 0.0;
+    const bool down = s->curve->cooling;
+    for (size_t k = cells->n; k-- > 0;) {
+        const size_t i = down ? cells->n - 1 - k : k;
         const double T = cells->T[i];
-        const double off = T < s->glass.low_K ? cells->y[i] - ce_line_at(&s->g.line, T) : 0.0;
+        if (!down && T < s->glass.low_K)
+            off = fmax(off, fabs(cells->y[i] - ce_line_at(&s->g.line, T)));
+        if (down && T > s->liquid.high_K)
+            off = fmax(off, fabs(cells->y[i] - ce_line_at(&s->l.line, T)));
         /* centred and as wide as overshoots are, between half-step and the liquid line */
         const double peak = (T - s->p.at[CE_HALF_STEP] - 0.8 * s->width) / (0.7 * s->width);
         cells->sd[i] =
@@ -261,27 +270,52 @@ static ce_status try_model(by_model *f, double step, ce_model next, ce_status so
     return st == CE_E_NOMEM ? st : so_far;
 }
 
-/* One history after the other until one does: cooled at the rate of the scan, slower, faster;
- * annealed, from the best of these and afresh. */
+/* Histories to begin from where the plain one (cooled at the rate of the scan) does not do. */
+static const ce_history histories[] = {
+    {0.0, -2.5, 0.0, 0.0},  {0.0, -1.2, 0.0, 0.0},  {0.0, 1.2, 0.0, 0.0},   {0.0, 2.5, 0.0, 0.0},
+    {-0.5, -1.2, 0.0, 0.0}, {-0.5, 0.0, 0.0, 0.0},  {-0.5, 1.2, 0.0, 0.0},  {0.5, -1.2, 0.0, 0.0},
+    {0.5, 0.0, 0.0, 0.0},   {0.5, 1.2, 0.0, 0.0},   {0.0, 0.0, 3.0, 8.0},   {0.0, 0.0, 5.5, 8.0},
+    {0.0, 0.0, 8.0, 8.0},   {0.0, 0.0, 4.0, 16.0},  {0.0, 0.0, 7.0, 16.0},  {0.0, 0.0, 6.0, 24.0},
+    {-0.5, 0.0, 5.5, 8.0},  {-0.5, 0.0, 6.0, 16.0}, {-0.5, 0.0, 7.0, 24.0}, {0.5, 0.0, 5.5, 8.0},
+    {0.5, 0.0, 6.0, 16.0},
+};
+enum { HISTORIES = sizeof histories / sizeof *histories };
+
+static int by_total(const void *a, const void *b)
+{
+    const double x = ((const ce_model *)a)->total, y = ((const ce_model *)b)->total;
+    return (x > y) - (x < y);
+}
+
+/* Neither the curve nor what is known of glasses asks for another history. */
+static bool fits_well(const by_model *f)
+{
+    const double expected = expected_misfit(&f->cells, f->model.sigma);
+    const double priors = f->model.total - f->model.misfit * (double)f->cells.n;
+    return f->model.misfit < 1.1 * expected + 0.05 && priors < most_prior;
+}
+
+/* From the plain history; where that does not do, from those of the list that come nearest. */
 static ce_status try_histories(by_model *f, double step, const ce_model *start)
 {
-    static const double cooled[] = {0.0, 2.0, -2.0};
-    const double good = 1.1 * expected_misfit(&f->cells, start->sigma) + 0.05;
-    ce_status st = CE_E_NOFIT;
-    for (size_t k = 0; k < sizeof cooled / sizeof *cooled && f->work < most_work / 2; k++) {
-        ce_model next = *start;
-        ce_model_cooled(&next, cooled[k]);
-        st = try_model(f, step, next, st);
-        if (st == CE_E_NOMEM || start->cooling || (st == CE_OK && f->model.misfit < good))
-            return st;
+    ce_status st = try_model(f, step, *start, CE_E_NOFIT);
+    if (st == CE_E_NOMEM || start->cooling || (st == CE_OK && fits_well(f))) return st;
+    ce_model *from = malloc(HISTORIES * sizeof *from);
+    if (from == NULL) return CE_E_NOMEM;
+    for (size_t k = 0; k < HISTORIES; k++) {
+        from[k] = *start;
+        ce_model_history(&from[k], &histories[k]);
+        if (ce_model_try(&f->cells, step, &from[k]) != CE_OK) {
+            free(from);
+            return CE_E_NOMEM;
+        }
     }
-    for (int k = 0; k < 3 && f->work < most_work; k++) {
-        ce_model next = k == 0 && st == CE_OK ? f->model : *start;
-        if (k == 2) ce_model_cooled(&next, 1.5);
-        next.aged = true;
-        st = try_model(f, step, next, st);
-        if (st == CE_E_NOMEM || (st == CE_OK && f->model.misfit < good)) return st;
+    qsort(from, HISTORIES, sizeof *from, by_total);
+    for (size_t k = 0; k < MOST_TRIED && f->work < most_work; k++) {
+        st = try_model(f, step, from[k], st);
+        if (st == CE_E_NOMEM || (st == CE_OK && fits_well(f))) break;
     }
+    free(from);
     return st;
 }
 

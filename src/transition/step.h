@@ -35,7 +35,7 @@ typedef struct {
     double *sd;         /* what the model may miss there, besides the noise; 0 to begin with    */
 } ce_cells;
 
-enum { CE_SHAPES = 9, CE_LINEAR = 6, CE_FREE = CE_SHAPES + CE_LINEAR };
+enum { CE_SHAPES = 9, CE_LINEAR = 7, CE_FREE = CE_SHAPES + CE_LINEAR };
 
 /* The fitted model: Cp-like signal = glass line + step * (step height along Tf) + start-up. */
 typedef struct {
@@ -83,8 +83,15 @@ ce_status ce_model_reweigh(const ce_design *design, const double *share, double 
 /* A first guess for a step of this half-step temperature and width; sigma > 0. */
 ce_model ce_model_start(bool cooling, double centre_K, double width_K, double sigma,
                         double hook_from_K);
-/* Start from another ratio of the cooling before to the scan, ln. */
-void ce_model_cooled(ce_model *model, double log_ratio);
+/* Another start: a sharper step (ln of Tr^2/h), cooled before at another rate (ln of its ratio to
+ * the scan), annealed (ln of time times rate of the scan in K; 0 = not) so far below. */
+typedef struct {
+    double sharper, cooling, age, age_below_K;
+} ce_history;
+void ce_model_history(ce_model *model, const ce_history *history);
+/* How well a start does without any iteration, in model->total; its Tr is moved so that the half-step
+ * lies at the model's origin. CE_OK | CE_E_NOMEM. */
+ce_status ce_model_try(const ce_cells *cells, double step, ce_model *model);
 /* The columns of the linear parameters at n cells, row by row, phi[n * CE_LINEAR], and the fictive
  * temperatures tf[n]. Scratch: step[n]. */
 void ce_model_columns(const ce_model *model, size_t n, const double *low, const double *high,
