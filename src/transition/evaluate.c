@@ -8,10 +8,11 @@
 #include <string.h>
 
 enum { TRACE = 600 };
-enum { MOST_TRIED = 5 };               /* histories fitted from, of those listed              */
-static const size_t most_work = 100;   /* iterations after which no other is                  */
-static const double most_prior = 9.0;  /* chi-square of the priors: as many as there are      */
-static const double most_rough = 0.03; /* what a model may leave over of a step           */
+static const double roughly = 0.03;   /* of a step, when starts are compared by their gross shape */
+enum { MOST_TRIED = 5 };              /* histories fitted from, of those listed              */
+static const size_t most_work = 100;  /* iterations after which no other is                  */
+static const double most_prior = 9.0; /* chi-square of the priors: as many as there are      */
+static const double most_rough = 0.03;       /* what a model may leave over of a step           */
 static const double straight_glass_K = 60.0; /* a glass line is no line over much more            */
 static const double last_K = 1.5; /* of a segment, where the programme may already be turning   */
 static const double least_baseline_K = 10.0; /* beside the step, else the run cuts it off       */
@@ -258,6 +259,13 @@ static double expected_misfit(const ce_cells *cells, double sigma)
 static ce_status try_model(by_model *f, double step, ce_model next, ce_status so_far)
 {
     ce_design design = {0};
+    if (next.least_sd >
+        0.0) { /* from the gross shape to the fine one                              */
+        const ce_status rough = ce_model_fit(&f->cells, step, &next, NULL);
+        f->work += next.iterations;
+        if (rough != CE_OK) return rough == CE_E_NOMEM ? rough : so_far;
+        next.least_sd = 0.0;
+    }
     const ce_status st = ce_model_fit(&f->cells, step, &next, &design);
     f->work += next.iterations;
     if (st == CE_OK && (so_far != CE_OK || next.total < 0.9 * f->model.total)) {
@@ -270,15 +278,18 @@ static ce_status try_model(by_model *f, double step, ce_model next, ce_status so
     return st == CE_E_NOMEM ? st : so_far;
 }
 
-/* Histories to begin from where the plain one (cooled at the rate of the scan) does not do. */
-static const ce_history histories[] = {
-    {0.0, -2.5, 0.0, 0.0},  {0.0, -1.2, 0.0, 0.0},  {0.0, 1.2, 0.0, 0.0},   {0.0, 2.5, 0.0, 0.0},
-    {-0.5, -1.2, 0.0, 0.0}, {-0.5, 0.0, 0.0, 0.0},  {-0.5, 1.2, 0.0, 0.0},  {0.5, -1.2, 0.0, 0.0},
-    {0.5, 0.0, 0.0, 0.0},   {0.5, 1.2, 0.0, 0.0},   {0.0, 0.0, 3.0, 8.0},   {0.0, 0.0, 5.5, 8.0},
-    {0.0, 0.0, 8.0, 8.0},   {0.0, 0.0, 4.0, 16.0},  {0.0, 0.0, 7.0, 16.0},  {0.0, 0.0, 6.0, 24.0},
-    {-0.5, 0.0, 5.5, 8.0},  {-0.5, 0.0, 6.0, 16.0}, {-0.5, 0.0, 7.0, 24.0}, {0.5, 0.0, 5.5, 8.0},
-    {0.5, 0.0, 6.0, 16.0},
-};
+/* Histories to begin from where the plain one (cooled at the rate of the scan) does not do: glasses
+ * from poly(vinyl chloride) to polystyrene, cooled seven times slower to faster, or annealed near and
+ * far below the step. */
+#define OF_GLASS(unit, x)                                                                          \
+    {unit, x, -2.0, 0.0, 0.0}, {unit, x, -0.7, 0.0, 0.0}, {unit, x, 0.7, 0.0, 0.0},                \
+        {unit, x, 2.0, 0.0, 0.0}, {unit, x, 0.5, 3.0, 8.0}, {unit, x, 0.5, 5.5, 10.0},             \
+        {unit, x, 0.5, 8.0, 14.0},                                                                 \
+    {                                                                                              \
+        unit, x, 0.5, 5.5, 20.0                                                                    \
+    }
+static const ce_history histories[] = {OF_GLASS(-0.55, -1.6), OF_GLASS(0.0, -1.2),
+                                       OF_GLASS(0.55, -0.85)};
 enum { HISTORIES = sizeof histories / sizeof *histories };
 
 static int by_total(const void *a, const void *b)
@@ -304,6 +315,7 @@ static ce_status try_histories(by_model *f, double step, const ce_model *start)
     if (from == NULL) return CE_E_NOMEM;
     for (size_t k = 0; k < HISTORIES; k++) {
         from[k] = *start;
+        from[k].least_sd = roughly * step;
         ce_model_history(&from[k], &histories[k]);
         if (ce_model_try(&f->cells, step, &from[k]) != CE_OK) {
             free(from);
@@ -311,8 +323,13 @@ static ce_status try_histories(by_model *f, double step, const ce_model *start)
         }
     }
     qsort(from, HISTORIES, sizeof *from, by_total);
-    for (size_t k = 0; k < MOST_TRIED && f->work < most_work; k++) {
-        st = try_model(f, step, from[k], st);
+    /* the plain fit has been where the others without annealing lead: those with it come first */
+    static const bool annealed[] = {true, false, true, true, false};
+    size_t next[2] = {0};
+    for (size_t k = 0; k < sizeof annealed / sizeof *annealed && f->work < most_work; k++) {
+        size_t *i = &next[annealed[k]];
+        while (from[*i].aged != annealed[k]) ++*i;
+        st = try_model(f, step, from[(*i)++], st);
         if (st == CE_E_NOMEM || (st == CE_OK && fits_well(f))) break;
     }
     free(from);
@@ -324,8 +341,9 @@ static ce_status fit_model(const by_windows *s, ce_window range, by_model *f)
     const ce_curve *c = s->curve;
     const double centre = s->p.at[CE_HALF_STEP];
     const double fine = clamp(s->width / 16.0, fmax(0.1, c->spacing), 0.4);
-    ce_model start = ce_model_start(c->cooling, centre, s->width, fmax(c->noise, 1e-9 * s->p.step),
-                                    c->cooling ? c->T[c->n - 1] : c->T[0]);
+    ce_model start =
+        ce_model_start(c->cooling, centre, s->width, fmax(c->slow_noise, 1e-9 * s->p.step),
+                       c->cooling ? c->T[c->n - 1] : c->T[0]);
     start.fine_K = clamp(s->width / 16.0, 0.15, 0.5);
     ce_status st = ce_cells_make(c, range.low_K, range.high_K, centre, fine, &f->cells);
     if (st != CE_OK) return st;

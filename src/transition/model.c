@@ -361,8 +361,8 @@ static int solve(problem *p, gsl_vector *shape, ce_design *design)
 
 void ce_model_history(ce_model *m, const ce_history *h)
 {
-    m->shape[S_UNIT] += h->sharper;
-    m->shape[S_X] += 0.7 * h->sharper;
+    m->shape[S_UNIT] = h->unit;
+    m->shape[S_X] = h->x;
     m->shape[S_COOLING] = h->cooling;
     m->aged = h->age > 0.0;
     if (m->aged) m->shape[S_AGE] = h->age;
@@ -412,7 +412,8 @@ static bool problem_open(problem *p, ce_model *model, const ce_cells *cells, dou
     p->alt = p->phi + rows * CE_LINEAR;
     p->q = p->alt + rows * CE_LINEAR;
     for (size_t i = 0; i < n; i++) {
-        p->root[i] = 1.0 / hypot(model->sigma / sqrt(cells->w[i]), cells->sd[i]);
+        p->root[i] =
+            1.0 / hypot(model->sigma / sqrt(cells->w[i]), fmax(cells->sd[i], model->least_sd));
         p->y[i] = cells->y[i] * p->root[i];
     }
     return true;
