@@ -303,7 +303,9 @@ static bool fits_well(const by_model *f)
 {
     const double expected = expected_misfit(&f->cells, f->model.sigma);
     const double priors = f->model.total - f->model.misfit * (double)f->cells.n;
-    return f->model.misfit < 1.1 * expected + 0.05 && priors < most_prior;
+    const double luck =
+        3.0 * sqrt(2.0 / (double)f->cells.n); /* of a mean of squares              */
+    return f->model.misfit < (1.0 + luck) * expected + 0.05 && priors < most_prior;
 }
 
 /* From the plain history; where that does not do, from those of the list that come nearest. */

@@ -75,15 +75,22 @@ static double hook_at(const ce_model *m, double rate, double low, double high)
     return hook_mean(rate * (low - m->hook_from_K), rate * (high - m->hook_from_K));
 }
 
+/* The modes computed last: most shape parameters leave beta alone. */
+typedef struct {
+    double beta; /* 0 = none yet                                                                 */
+    ce_modes modes;
+} known_modes;
+
 /* The columns of the linear parameters at n cells, row by row with stride CE_LINEAR. */
-static void columns(const ce_model *m, const double *shape, const ce_modes *modes, size_t n,
+static void columns(const ce_model *m, const double *shape, known_modes *known, size_t n,
                     const double *low, const double *high, double *tf, double *step, double *out)
 {
     ce_relax r = relax_of(m, shape);
-    if (modes != NULL)
-        r.modes = *modes;
-    else
-        ce_relax_modes(r.beta, &r.modes);
+    if (known->beta != r.beta) {
+        known->beta = r.beta;
+        ce_relax_modes(r.beta, &known->modes);
+    }
+    r.modes = known->modes;
     ce_relax_scan(&r, m->cooling, n, low, high, tf, step);
     const double hook = hook_rate(m, shape);
     const double lagging = (m->cooling ? 1.0 : -1.0) / r.lag_K;
@@ -113,6 +120,7 @@ typedef struct {
     double *y, *root;  /* weighted signal; root of weight of each cell                          */
     double coef[CE_LINEAR];
     bool used[CE_LINEAR];
+    known_modes known;
 } problem;
 
 /* Orthonormalise phi's columns into q (modified Gram-Schmidt, twice), solve for the coefficients
@@ -170,7 +178,7 @@ static int residual(const gsl_vector *shape, void *data, gsl_vector *f)
 {
     problem *p = data;
     const ce_cells *c = p->cells;
-    columns(p->m, shape->data, NULL, c->n, c->low, c->high, p->tf, p->step, p->phi);
+    columns(p->m, shape->data, &p->known, c->n, c->low, c->high, p->tf, p->step, p->phi);
     weigh(p, p->phi);
     project(p, f->data);
     for (size_t j = 0; j < CE_SHAPES; j++) {
@@ -198,7 +206,10 @@ static void slope_by(problem *p, const double *shape, size_t j, double *out)
                      p->root[i] * p->coef[L_HOOK] / h;
         return;
     }
-    columns(p->m, moved, NULL, c->n, c->low, c->high, p->tf, p->step, p->alt);
+    known_modes other = {
+        0}; /* what the derivatives by the other parameters use stays known         */
+    const bool same = relax_of(p->m, moved).beta == p->known.beta;
+    columns(p->m, moved, same ? &p->known : &other, c->n, c->low, c->high, p->tf, p->step, p->alt);
     weigh(p, p->alt);
     for (size_t i = 0; i < p->rows; i++) {
         double d = 0.0;
@@ -216,7 +227,7 @@ static int jacobian(const gsl_vector *shape, void *data, gsl_matrix *J)
     gsl_matrix_set_zero(J);
     gsl_vector_view tmp = gsl_vector_view_array(p->alt, p->rows);
     const ce_cells *c = p->cells; /* the solver may have tried another point since */
-    columns(p->m, shape->data, NULL, c->n, c->low, c->high, p->tf, p->step, p->phi);
+    columns(p->m, shape->data, &p->known, c->n, c->low, c->high, p->tf, p->step, p->phi);
     weigh(p, p->phi);
     project(p, tmp.vector.data);
     for (size_t j = 0; j < CE_SHAPES; j++) {
@@ -448,9 +459,9 @@ ce_status ce_model_try(const ce_cells *cells, double step, ce_model *model)
     double *room;
     if (!problem_open(&p, model, cells, step, &room)) return CE_E_NOMEM;
     double *res = p.alt; /* not needed here otherwise                                           */
-    columns(model, model->shape, NULL, cells->n, cells->low, cells->high, p.tf, p.step, p.phi);
+    columns(model, model->shape, &p.known, cells->n, cells->low, cells->high, p.tf, p.step, p.phi);
     model->shape[S_TR] += model->ref_K - half_of(cells, p.step);
-    columns(model, model->shape, NULL, cells->n, cells->low, cells->high, p.tf, p.step, p.phi);
+    columns(model, model->shape, &p.known, cells->n, cells->low, cells->high, p.tf, p.step, p.phi);
     weigh(&p, p.phi);
     project(&p, res);
     model->total = 0.0;
@@ -466,7 +477,8 @@ ce_status ce_model_try(const ce_cells *cells, double step, ce_model *model)
 void ce_model_columns(const ce_model *m, size_t n, const double *low, const double *high,
                       double *phi, double *tf, double *step)
 {
-    columns(m, m->shape, NULL, n, low, high, tf, step, phi);
+    known_modes none = {0};
+    columns(m, m->shape, &none, n, low, high, tf, step, phi);
 }
 
 void ce_model_combine(const ce_model *m, size_t n, const double *phi, double *y)
