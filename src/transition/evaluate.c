@@ -22,7 +22,7 @@ static const double inexact_steps = 1e-3; /* what the model may miss of a step, 
  * stretched exponential to the last per cent, nor another integration of the same equations, where
  * a first-order scheme in steps of 0.05 K is off by 0.8 % of a step. There the curve itself is read,
  * and the lines must not bend to it. */
-static const double inexact_peak = 0.01;
+static const double inexact_peak = 0.01; /* of the overshoot's height over the glass line */
 
 /* Room for one trace. */
 typedef struct {
@@ -238,9 +238,10 @@ static void weigh_cells(const by_windows *s, ce_cells *cells)
             off = fmax(off, fabs(cells->y[i] - ce_line_at(&s->l.line, T)));
         /* centred and as wide as overshoots are, between half-step and the liquid line */
         const double peak = (T - s->p.at[CE_HALF_STEP] - 0.8 * s->width) / (0.7 * s->width);
-        cells->sd[i] =
-            hypot(hypot(inexact_steps, inexact_peak * exp(-0.5 * peak * peak)) * s->p.step,
-                  inexact_start * off);
+        cells->sd[i] = hypot(
+            hypot(inexact_steps, inexact_peak * (1.0 + s->p.overshoot) * exp(-0.5 * peak * peak)) *
+                s->p.step,
+            inexact_start * off);
     }
 }
 
