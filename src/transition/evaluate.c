@@ -398,11 +398,12 @@ static ce_status window_part(const by_model *f, double sum[CE_CONSTRUCTIONS + 2]
  * tuning. */
 static const double area_part = 0.05;
 
-/* What histories that fit equally well leave open, K for a step 10 K wide, growing with the cube of
- * the width; from the tuning half of tests/bench/transition_accuracy. */
+/* What histories that fit equally well leave open, K for a step 10 K wide, growing with a power of the
+ * width; from the tuning half of tests/bench/transition_accuracy. */
 static const double model_part[CE_CONSTRUCTIONS] = {
-    [CE_ONSET] = 0.035,     [CE_MIDPOINT] = 0.028, [CE_HALF_STEP] = 0.03,
-    [CE_INFLECTION] = 0.03, [CE_END] = 0.012,      [CE_FICTIVE] = 0.2};
+    [CE_ONSET] = 0.014,      [CE_MIDPOINT] = 0.011, [CE_HALF_STEP] = 0.012,
+    [CE_INFLECTION] = 0.012, [CE_END] = 0.005,      [CE_FICTIVE] = 0.08};
+static const double power = 4.0;
 
 static ce_status model_uncertainty(const by_windows *s, by_model *f, modelling *m,
                                    const ce_transition_options *o, ce_finding *out)
@@ -411,12 +412,18 @@ static ce_status model_uncertainty(const by_windows *s, by_model *f, modelling *
     if (!gradients(f, m)) return CE_E_NOFIT;
     if (o->ensemble && window_part(f, sum) == CE_E_NOMEM) return CE_E_NOMEM;
     const double least = 0.01 * s->curve->spacing + 1e-3;
-    const double broad =
-        pow(s->width / 10.0, 3.0) * (f->model.aged || f->p.overshoot > 0.2 ? 2.0 : 1.0);
+    const double broad = pow(s->width / 10.0, power);
     for (int k = 0; k < CE_CONSTRUCTIONS; k++) {
-        out->u_noise[k] = hypot(sqrt(variance(f, (size_t)k)), least);
-        out->u_window[k] = hypot(sqrt(sum[k]), model_part[k] * broad);
+        const double noise = variance(f, (size_t)k);
+        out->u_noise[k] = hypot(sqrt(noise), least);
+        if (getenv("UU") && (k == CE_HALF_STEP || k == CE_FICTIVE))
+            fprintf(stderr, "UU %d noise %.4f jack %.4f part %.4f aged %d over %.2f width %.2f\n",
+                    k, sqrt(noise), sqrt(sum[k]), model_part[k] * pow(s->width / 10.0, power),
+                    f->model.aged, f->p.overshoot, s->width);
+        /* the stretches differ by their noise too: that is counted already */
+        out->u_window[k] = hypot(sqrt(fmax(sum[k] - noise, 0.0)), model_part[k] * broad);
     }
+    out->u_window[CE_FICTIVE] = hypot(out->u_window[CE_FICTIVE], area_part);
     out->step_u = sqrt(variance(f, CE_CONSTRUCTIONS) + sum[CE_CONSTRUCTIONS]);
     out->width_u = sqrt(variance(f, CE_CONSTRUCTIONS + 1) + sum[CE_CONSTRUCTIONS + 1]);
     return CE_OK;
