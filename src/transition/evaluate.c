@@ -405,6 +405,18 @@ static const double model_part[CE_CONSTRUCTIONS] = {
     [CE_INFLECTION] = 0.012, [CE_END] = 0.005,      [CE_FICTIVE] = 0.08};
 static const double power = 4.0;
 
+/* A step that changes with temperature counts at the fictive temperature (Moynihan et al. 1976), but
+ * often is taken at the temperature of the sample: either reading is half of the doubt, so that the
+ * standard uncertainty is that of a uniform distribution between them, K. */
+static double reading_of_step(const by_model *f, const modelling *m)
+{
+    double apart = 0.0;
+    for (size_t i = FAR; i < m->n; i++)
+        apart +=
+            (0.5 * (m->low[i] + m->high[i]) - m->tf[i]) * m->step[i] * (m->high[i] - m->low[i]);
+    return fabs(apart * (f->lines.liquid.slope - f->lines.glass.slope) / f->p.step) / sqrt(3.0);
+}
+
 static ce_status model_uncertainty(const by_windows *s, by_model *f, modelling *m,
                                    const ce_transition_options *o, ce_finding *out)
 {
@@ -416,14 +428,11 @@ static ce_status model_uncertainty(const by_windows *s, by_model *f, modelling *
     for (int k = 0; k < CE_CONSTRUCTIONS; k++) {
         const double noise = variance(f, (size_t)k);
         out->u_noise[k] = hypot(sqrt(noise), least);
-        if (getenv("UU") && (k == CE_HALF_STEP || k == CE_FICTIVE))
-            fprintf(stderr, "UU %d noise %.4f jack %.4f part %.4f aged %d over %.2f width %.2f\n",
-                    k, sqrt(noise), sqrt(sum[k]), model_part[k] * pow(s->width / 10.0, power),
-                    f->model.aged, f->p.overshoot, s->width);
         /* the stretches differ by their noise too: that is counted already */
         out->u_window[k] = hypot(sqrt(fmax(sum[k] - noise, 0.0)), model_part[k] * broad);
     }
-    out->u_window[CE_FICTIVE] = hypot(out->u_window[CE_FICTIVE], area_part);
+    out->u_window[CE_FICTIVE] =
+        hypot(out->u_window[CE_FICTIVE], hypot(area_part, reading_of_step(f, m)));
     out->step_u = sqrt(variance(f, CE_CONSTRUCTIONS) + sum[CE_CONSTRUCTIONS]);
     out->width_u = sqrt(variance(f, CE_CONSTRUCTIONS + 1) + sum[CE_CONSTRUCTIONS + 1]);
     return CE_OK;

@@ -133,7 +133,6 @@ static outcome one(uint64_t seed, bool judge)
                 out.error[k] = (double)NAN;
         }
     }
-    if (getenv("UU") && st == CE_OK) fprintf(stderr,"ERR class %d half %.4f u %.4f fict %.4f u %.4f\n",out.class,out.error[CE_HALF_STEP],out.u[CE_HALF_STEP],out.error[CE_FICTIVE],out.u[CE_FICTIVE]);
     ce_transitions_free(&found);
     ce_run_free(run);
     ce_simulation_free(s);
