@@ -480,7 +480,7 @@ static double roughness(const by_windows *s, const by_model *f)
 static bool follows(const by_windows *s, const by_model *f, double rough)
 {
     const double apart = fabs(f->p.at[CE_HALF_STEP] - s->p.at[CE_HALF_STEP]);
-    return rough < most_rough && apart < fmax(0.5 * s->width, 2.0) && f->p.step > 0.5 * s->p.step &&
+    return rough < most_rough && apart < fmax(0.2 * s->width, 1.0) && f->p.step > 0.5 * s->p.step &&
            f->p.step < 2.0 * s->p.step;
 }
 
