@@ -13,6 +13,7 @@
 #include <chainend/base.h>
 #include <chainend/estimate.h>
 #include <chainend/fit.h>
+#include <chainend/record.h>
 #include <chainend/run.h>
 #include <chainend/series.h>
 #include <chainend/transition.h>

@@ -5,12 +5,21 @@
 #include <stdlib.h>
 #include <string.h>
 
-void cli_answer(const cli_calibration *c, const ce_unknown *unknown, ce_answer *answer)
+cli_answering cli_answering_default(void)
+{
+    return (cli_answering){.trials = ce_monte_carlo_options_default()};
+}
+
+void cli_answer(const cli_calibration *c, const cli_answering *how, const ce_unknown *unknown,
+                ce_answer *answer)
 {
     if (answer->status != CE_OK) return;
     answer->status = ce_estimate_mn(&c->fit, unknown, 0.0, &answer->mn, &answer->error);
     if (answer->status == CE_OK)
         (void)ce_estimate_hint(&c->fit, unknown, &answer->mn, answer->hint, sizeof answer->hint);
+    if (answer->status == CE_OK && how->monte_carlo)
+        answer->status = ce_monte_carlo_mn(&c->fit, unknown, 0.0, &how->trials,
+                                           &answer->monte_carlo, &answer->error);
 }
 
 static bool same_or_absent(const double *u, size_t n)
@@ -20,7 +29,8 @@ static bool same_or_absent(const double *u, size_t n)
     return true;
 }
 
-void cli_answer_sample(const cli_calibration *c, const ce_sample *s, ce_answer *answer)
+void cli_answer_sample(const cli_calibration *c, const cli_answering *how, const ce_sample *s,
+                       ce_answer *answer)
 {
     *answer = (ce_answer){.name = strdup(s->name), .readings = s->n_used, .error = CE_ERROR_INIT};
     if (s->n_used == 0) {
@@ -35,8 +45,9 @@ void cli_answer_sample(const cli_calibration *c, const ce_sample *s, ce_answer *
     unknown.mw_over_mn = c->series.row[s->row[0]].dispersity;
     unknown.chain_ends = s->chain_ends;
     unknown.reading_u_K = s->reading_u_K;
+    unknown.rate_decades = s->rate_decades;
     if (same_or_absent(s->tg_u_K, s->n_used)) unknown.tg_u_K = s->tg_u_K[0];
-    cli_answer(c, &unknown, answer);
+    cli_answer(c, how, &unknown, answer);
 }
 
 size_t cli_count_unknowns(const ce_series *series)
@@ -63,10 +74,11 @@ ce_estimate_result cli_estimate_result(const cli_calibration *c, const ce_answer
 ce_answer *cli_answer_unknowns(const cli_calibration *c, ce_estimate_result *result)
 {
     size_t n = cli_count_unknowns(&c->series), k = 0;
+    const cli_answering how = cli_answering_default();
     ce_answer *answer = calloc(n > 0 ? n : 1, sizeof *answer);
     for (size_t i = 0; answer != NULL && i < c->series.n_samples; i++)
         if (c->series.sample[i].role == CE_UNKNOWN)
-            cli_answer_sample(c, &c->series.sample[i], &answer[k++]);
+            cli_answer_sample(c, &how, &c->series.sample[i], &answer[k++]);
     *result = cli_estimate_result(c, answer, answer == NULL ? 0 : n);
     return answer;
 }

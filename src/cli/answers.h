@@ -6,10 +6,19 @@
 #include "cli/calibration.h"
 #include "output/estimate.h"
 
+/* How unknowns are answered. */
+typedef struct {
+    bool monte_carlo;
+    ce_monte_carlo_options trials;
+} cli_answering;
+cli_answering cli_answering_default(void);
+
 /* Fill in Mn, interval and hint, unless answer->status is already a refusal. */
-void cli_answer(const cli_calibration *c, const ce_unknown *unknown, ce_answer *answer);
+void cli_answer(const cli_calibration *c, const cli_answering *how, const ce_unknown *unknown,
+                ce_answer *answer);
 /* The answer for one sample of the series. */
-void cli_answer_sample(const cli_calibration *c, const ce_sample *s, ce_answer *answer);
+void cli_answer_sample(const cli_calibration *c, const cli_answering *how, const ce_sample *s,
+                       ce_answer *answer);
 size_t cli_count_unknowns(const ce_series *series);
 /* What surrounds n answers when they are shown. */
 ce_estimate_result cli_estimate_result(const cli_calibration *c, const ce_answer *answer, size_t n);

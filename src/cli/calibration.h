@@ -5,6 +5,7 @@
 
 #include <chainend/estimate.h>
 #include <chainend/fit.h>
+#include <chainend/record.h>
 #include <chainend/series.h>
 
 #include "cli/cli.h"
@@ -23,6 +24,8 @@ typedef struct {
 cli_calibrating cli_calibrating_default(void);
 ce_status cli_set_relation(void *to, const char *value, ce_error *err);
 ce_status cli_set_scatter(void *to, const char *value, ce_error *err);
+/* A double: 0 <= share < 1, "5%" or "0.05". */
+ce_status cli_set_share(void *to, const char *value, ce_error *err);
 ce_status cli_set_excess(void *to, const char *value, ce_error *err);
 ce_status cli_set_fit_seed(void *to, const char *value, ce_error *err);
 
@@ -58,16 +61,25 @@ ce_status cli_set_fit_seed(void *to, const char *value, ce_error *err);
 int cli_read_series(const cli_command *command, const char *path, const cli_calibrating *c,
                     bool quiet, ce_series *series);
 
-/* A calibration: the fitted relation, with the series it came from. */
+#define CLI_RANGE_ROWS 10
+
+/* A calibration: the fitted relation, with the series it came from, or a record of both. */
 typedef struct {
     ce_series series;
     ce_fit fit;
+    ce_window glass, liquid; /* given for all runs; NaN = none */
+    bool recorded;           /* read from a record: nothing was evaluated or fitted now */
     double ceiling_tg_K, ceiling_mn_g_mol; /* one run of an unknown; NaN = none */
+    size_t n_range;
+    ce_range_row range[CLI_RANGE_ROWS]; /* working range along the standards, one run */
 } cli_calibration;
 
-/* Read, evaluate and fit. As cli_read_series(); release with cli_calibration_free() unless XIT_FAILED. */
+/* Read, evaluate and fit a series file; or read a record, whose fit cannot be changed any more. As cli_read_series(); release with cli_calibration_free() unless XIT_FAILED. */
 int cli_calibrate(const cli_command *command, const char *path, const cli_calibrating *c,
                   bool quiet, cli_calibration *calibration);
 void cli_calibration_free(cli_calibration *calibration);
+
+/* Write the record of a calibration, whole or not at all. CE_OK | CE_E_IO | CE_E_DOMAIN | CE_E_NOMEM. */
+ce_status cli_save(const char *path, const cli_calibration *calibration, ce_error *err);
 
 #endif

@@ -65,6 +65,8 @@ typedef struct {
     bool quiet;
 } cli_common;
 
+/* Does the environment say that text is shown in UTF-8? */
+bool cli_speaks_utf8(void);
 /* A whole number of at most 18 digits, as seeds are. */
 ce_status cli_whole_number(uint64_t *to, const char *value, ce_error *err);
 ce_status cli_set_format(void *to, const char *value, ce_error *err);

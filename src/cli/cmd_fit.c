@@ -15,7 +15,7 @@ static const cli_command command = {
               "of their runs. "
               "Without repeats or stated uncertainties the scatter comes from the residuals, with "
               "a warning.",
-    .example = "chainend fit series.csv\n"
+    .example = "chainend fit --save calibration.json series.csv\n"
                "chainend fit --relation ueberreiter-kanig --level 0.99 --format json series.csv",
 };
 
@@ -23,7 +23,15 @@ int cmd_fit(int argc, char **argv)
 {
     cli_common common = {0};
     cli_calibrating c = cli_calibrating_default();
-    const cli_option options[] = {CLI_COMMON_OPTIONS(&common), CLI_FIT_OPTIONS(&c),
+    const char *save = NULL;
+    const cli_option options[] = {CLI_COMMON_OPTIONS(&common),
+                                  {.name = "save",
+                                   .argument = "FILE",
+                                   .help = "save the calibration as a record, for estimate, check "
+                                           "and plan",
+                                   .kind = CLI_TEXT,
+                                   .to = &save},
+                                  CLI_FIT_OPTIONS(&c),
                                   CLI_SERIES_OPTIONS(&c)};
     int first, status;
     if (!cli_parse(&command, options, sizeof options / sizeof *options, argc, argv, &first,
@@ -33,10 +41,18 @@ int cmd_fit(int argc, char **argv)
     cli_calibration calibration;
     status = cli_calibrate(&command, argv[first], &c, common.quiet, &calibration);
     if (status == XIT_FAILED) return status;
+    ce_error err = CE_ERROR_INIT;
+    if (save != NULL && cli_save(save, &calibration, &err) != CE_OK) {
+        cli_error(&command, &err);
+        cli_calibration_free(&calibration);
+        return XIT_FAILED;
+    }
     ce_fit_result result = {.fit = &calibration.fit,
                             .construction = calibration.series.construction,
                             .rate_K_min = calibration.series.rate_K_min,
                             .history = calibration.series.history,
+                            .n_range = calibration.n_range,
+                            .range = calibration.range,
                             .series = &calibration.series,
                             .polymer = calibration.series.polymer,
                             .ceiling_tg_K = calibration.ceiling_tg_K,

@@ -63,6 +63,18 @@ bool cli_colour(FILE *to)
     return isatty(fileno(to)) == 1 && term != NULL && strcmp(term, "dumb") != 0;
 }
 
+/* The first of these that is set decides (POSIX); the locale itself is not touched. */
+bool cli_speaks_utf8(void)
+{
+    static const char *const names[] = {"LC_ALL", "LC_CTYPE", "LANG"};
+    for (size_t i = 0; i < sizeof names / sizeof *names; i++) {
+        const char *value = getenv(names[i]);
+        if (value == NULL || value[0] == '\0') continue;
+        return strcasestr(value, "utf-8") != NULL || strcasestr(value, "utf8") != NULL;
+    }
+    return false;
+}
+
 static int deliver_to_file(const cli_command *command, const cli_common *common, ce_writer write,
                            const void *what, int status)
 {

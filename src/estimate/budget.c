@@ -110,18 +110,18 @@ static ce_status say_runs(const advice *a, const char *what, char *text, size_t 
         (void)snprintf(
             text, room,
             "%s is %.0f %% of the variance: measure this unknown more often; %zu runs in "
-            "all would bring the interval from +-%.0f %% to +-%.0f %%",
+            "all would bring the interval from ±%.0f %% to ±%.0f %%",
             what, 100.0 * a->share, runs, 100.0 * now, 100.0 * then);
-    else if (isfinite(then))
+    else if (isfinite(then) && then < 1.0)
         (void)snprintf(text, room,
                        "%s is %.0f %% of the variance: %zu runs in all, with the same mean, would "
-                       "close the interval at +-%.0f %%",
+                       "close the interval at ±%.0f %%",
                        what, 100.0 * a->share, runs, 100.0 * then);
     else
         (void)snprintf(
             text, room,
             "%s is %.0f %% of the variance, but the reading lies so near the plateau that "
-            "even %zu runs in all, with the same mean, would not close the interval: Tg "
+            "even %zu runs in all, with the same mean, would not close the interval usefully: Tg "
             "cannot tell molar masses apart here",
             what, 100.0 * a->share, runs);
     return CE_OK;

@@ -4,6 +4,7 @@
 #include "base/quantity.h"
 #include "output/json.h"
 #include "output/number.h"
+#include "output/ruler.h"
 #include "output/series.h"
 #include "output/sheet.h"
 #include "output/text.h"
@@ -13,6 +14,12 @@
 #include <string.h>
 
 /* ---- text --------------------------------------------------------------------------------- */
+
+const char *ce_answer_label(const ce_answer *answer)
+{
+    const char *slash = answer->from_runs ? strrchr(answer->name, '/') : NULL;
+    return slash == NULL ? answer->name : slash + 1;
+}
 
 /* An upper limit far above every standard is a number nobody should quote. */
 static bool is_absurd(const ce_estimate *e)
@@ -81,7 +88,7 @@ static void put_mn_row(ce_sheet *sheet, const ce_answer *answer)
 {
     const ce_estimate *e = &answer->mn;
     char text[CE_NUMBER_ROOM];
-    ce_sheet_text(sheet, answer->name, 24);
+    ce_sheet_text(sheet, ce_answer_label(answer), 24);
     ce_sheet_cell(sheet, "%zu", answer->readings);
     ce_sheet_cell(sheet, "%s", ce_celsius(text, e->tg_K, e->u_K));
     ce_sheet_cell(sheet, "%s", ce_fixed(text, e->u_K, ce_decimals(e->u_K)));
@@ -116,6 +123,23 @@ static ce_status put_mn_table(const ce_estimate_result *result, FILE *to, bool c
     return rows > 0 ? ce_sheet_print(&sheet, to, 0, colour) : CE_OK;
 }
 
+/* The cross-check beside the interval it checks. */
+static void put_monte_carlo(ce_remarks *remarks, const ce_answer *a)
+{
+    const ce_monte_carlo *m = &a->monte_carlo;
+    char low[CE_NUMBER_ROOM], high[CE_NUMBER_ROOM], p[CE_NUMBER_ROOM], text[300];
+    if (m->trials == 0) return;
+    (void)snprintf(
+        text, sizeof text,
+        "Monte Carlo with %zu trials%s: %g %% interval %s to %s kg/mol; no finite Mn with "
+        "probability %s",
+        m->trials, m->settled ? "" : " (not settled)", 100.0 * m->level,
+        ce_kg_mol(low, m->low_g_mol),
+        isnan(m->high_g_mol) ? "no limit" : ce_kg_mol(high, m->high_g_mol),
+        ce_significant(p, m->p_none, 2));
+    ce_remark(remarks, ce_answer_label(a), text);
+}
+
 static void put_remarks(const ce_estimate_result *result, FILE *to)
 {
     ce_remarks remarks = {.to = to, .heading = "remarks"};
@@ -123,11 +147,13 @@ static void put_remarks(const ce_estimate_result *result, FILE *to)
         const ce_answer *a = &result->answer[i];
         if (a->status != CE_OK || a->tg_of_mn) continue;
         for (unsigned bit = 1u; bit <= CE_EST_CURVE_EXTENDED; bit <<= 1)
-            if ((a->mn.flags & bit) != 0) ce_remark(&remarks, a->name, ce_estimate_flag_text(bit));
+            if ((a->mn.flags & bit) != 0)
+                ce_remark(&remarks, ce_answer_label(a), ce_estimate_flag_text(bit));
         if (a->despite)
-            ce_remark(&remarks, a->name,
+            ce_remark(&remarks, ce_answer_label(a),
                       "measured in another way than the calibration, allowed by --despite");
-        if (a->hint[0] != '\0') ce_remark(&remarks, a->name, a->hint);
+        if (a->hint[0] != '\0') ce_remark(&remarks, ce_answer_label(a), a->hint);
+        put_monte_carlo(&remarks, a);
     }
 }
 
@@ -135,13 +161,13 @@ ce_status ce_write_estimate_text(const ce_estimate_result *result, FILE *to, boo
 {
     int width = 0;
     for (size_t i = 0; i < result->n; i++) {
-        int n = (int)ce_text_columns(result->answer[i].name);
+        int n = (int)ce_text_columns(ce_answer_label(&result->answer[i]));
         if (n > width) width = n < 24 ? n : 24;
     }
     for (size_t i = 0; i < result->n; i++) {
         const ce_answer *a = &result->answer[i];
         if (a->status != CE_OK) continue;
-        char *name = ce_text_shown(a->name, 24);
+        char *name = ce_text_shown(ce_answer_label(a), 24);
         if (name == NULL) return CE_E_NOMEM;
         if (a->tg_of_mn)
             put_tg_verdict(to, name, width, a);
@@ -149,7 +175,8 @@ ce_status ce_write_estimate_text(const ce_estimate_result *result, FILE *to, boo
             put_mn_verdict(to, name, width, &a->mn);
         free(name);
     }
-    ce_status st = put_mn_table(result, to, colour);
+    ce_status st = ce_write_ruler(result, to, result->ascii);
+    if (st == CE_OK) st = put_mn_table(result, to, colour);
     if (st != CE_OK) return st;
     put_remarks(result, to);
     char *polymer =
@@ -216,6 +243,15 @@ static json_t *json_budget(const ce_estimate *e)
     return list;
 }
 
+static json_t *json_monte_carlo(const ce_monte_carlo *m)
+{
+    if (m->trials == 0) return json_null();
+    return json_pack("{s:I,s:b,s:o,s:o,s:o,s:o}", "trials", (json_int_t)m->trials, "settled",
+                     m->settled, "median_g_mol", ce_json_number(m->median_g_mol), "low_g_mol",
+                     ce_json_number(m->low_g_mol), "high_g_mol", ce_json_number(m->high_g_mol),
+                     "p_no_finite_mn", ce_json_number(m->p_none));
+}
+
 static json_t *json_mn(const ce_answer *a)
 {
     const ce_estimate *e = &a->mn;
@@ -226,14 +262,15 @@ static json_t *json_mn(const ce_answer *a)
     if (a->despite)
         (void)json_array_append_new(
             flags, json_string("measured in another way than the calibration, overruled"));
-    return json_pack("{s:o,s:s,s:I,s:o,s:o,s:o,s:o,s:o,s:s,s:b,s:o,s:o,s:o,s:o,s:o}", "name",
+    return json_pack("{s:o,s:s,s:I,s:o,s:o,s:o,s:o,s:o,s:s,s:b,s:o,s:o,s:o,s:o,s:o,s:o}", "name",
                      ce_json_text(a->name), "status", "ok", "readings", (json_int_t)a->readings,
                      "tg_K", ce_json_number(e->tg_K), "tg_u_K", ce_json_number(e->u_K), "mn_g_mol",
                      ce_json_number(e->mn_g_mol), "low_g_mol", ce_json_number(e->low_g_mol),
                      "high_g_mol", ce_json_number(e->high_g_mol), "bound", ce_bound_name(e->bound),
                      "disjoint", e->disjoint, "t", ce_json_number(e->t), "nu",
                      ce_json_number(e->nu), "budget", json_budget(e), "hint",
-                     ce_json_text(a->hint[0] == '\0' ? NULL : a->hint), "flags", flags);
+                     ce_json_text(a->hint[0] == '\0' ? NULL : a->hint), "monte_carlo",
+                     json_monte_carlo(&a->monte_carlo), "flags", flags);
 }
 
 static json_t *json_tg(const ce_answer *a)

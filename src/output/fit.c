@@ -122,6 +122,34 @@ static ce_status put_points(const ce_fit *fit, FILE *to, bool colour)
     return ce_sheet_print(&sheet, to, 0, colour);
 }
 
+/* What an unknown measured once would get, along the standards. */
+static ce_status put_range(const ce_fit_result *result, FILE *to, bool colour)
+{
+    static const ce_sheet_column column[] = {
+        {"Mn", "kg/mol", CE_POINT}, {"Tg", "°C", CE_POINT},        {"from", "kg/mol", CE_POINT},
+        {"to", "kg/mol", CE_POINT}, {"half-width", "%", CE_POINT},
+    };
+    if (result->n_range == 0) return CE_OK;
+    ce_sheet sheet;
+    ce_sheet_begin(&sheet, column, sizeof column / sizeof *column);
+    for (size_t i = 0; i < result->n_range; i++) {
+        const ce_range_row *r = &result->range[i];
+        const double most = 10.0 * result->range[result->n_range - 1].mn_g_mol;
+        char text[CE_NUMBER_ROOM];
+        ce_sheet_cell(&sheet, "%s", ce_kg_mol(text, r->mn_g_mol));
+        ce_sheet_cell(&sheet, "%s", ce_celsius(text, r->tg_K, 0.1));
+        ce_sheet_cell(&sheet, "%s", ce_kg_mol(text, r->low_g_mol));
+        ce_sheet_cell(&sheet, "%s", r->high_g_mol < most ? ce_kg_mol(text, r->high_g_mol) : "open");
+        if (r->bound == CE_TWO_SIDED && r->high_g_mol < most)
+            ce_sheet_cell(&sheet, "%s", ce_significant(text, 100.0 * r->relative, 2));
+        else
+            ce_sheet_none(&sheet);
+    }
+    fprintf(to, "\nworking range: what one run of an unknown would get (%g %% interval of Mn)\n",
+            100.0 * result->fit->options.level);
+    return ce_sheet_print(&sheet, to, 0, colour);
+}
+
 static void put_scatter(const ce_fit *fit, FILE *to)
 {
     char a[CE_NUMBER_ROOM];
@@ -268,6 +296,8 @@ ce_status ce_write_fit_text(const ce_fit_result *result, FILE *to, bool colour)
 {
     put_verdict(result, to);
     ce_status st = put_points(result->fit, to, colour);
+    if (st != CE_OK) return st;
+    st = put_range(result, to, colour);
     if (st != CE_OK) return st;
     put_scatter(result->fit, to);
     if (result->series != NULL) ce_write_rate_reduction(result->series, to);

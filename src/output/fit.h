@@ -3,6 +3,7 @@
 #ifndef CE_OUTPUT_FIT_H
 #define CE_OUTPUT_FIT_H
 
+#include <chainend/estimate.h>
 #include <chainend/fit.h>
 #include <chainend/series.h>
 
@@ -15,6 +16,8 @@ typedef struct {
     ce_history history;
     const char *polymer;
     const ce_series *series; /* NULL = not at hand: nothing is said of a reduction of rates */
+    size_t n_range;
+    const ce_range_row *range; /* working range for one run of an unknown                   */
     double ceiling_tg_K, ceiling_mn_g_mol; /* for one run of an unknown; NaN = no reading has one */
 } ce_fit_result;
 

@@ -203,6 +203,21 @@ static json_t *json_test(double F, double p)
     return json_pack("{s:o,s:o}", "F", ce_json_number(F), "p", ce_json_number(p));
 }
 
+static json_t *json_range(const ce_fit_result *result)
+{
+    json_t *list = json_array();
+    for (size_t i = 0; i < result->n_range; i++) {
+        const ce_range_row *r = &result->range[i];
+        (void)json_array_append_new(
+            list,
+            json_pack("{s:o,s:o,s:o,s:o,s:s,s:o}", "mn_g_mol", ce_json_number(r->mn_g_mol), "tg_K",
+                      ce_json_number(r->tg_K), "low_g_mol", ce_json_number(r->low_g_mol),
+                      "high_g_mol", ce_json_number(r->high_g_mol), "bound", ce_bound_name(r->bound),
+                      "relative_half_width", ce_json_number(r->relative)));
+    }
+    return list;
+}
+
 ce_status ce_write_fit_json(const ce_fit_result *result, FILE *to)
 {
     const ce_fit *fit = result->fit;
@@ -246,6 +261,7 @@ ce_status ce_write_fit_json(const ce_fit_result *result, FILE *to)
     (void)json_object_set_new(o, "model_spread", json_spread(fit));
     set_number(o, "ceiling_tg_K", result->ceiling_tg_K);
     set_number(o, "ceiling_mn_g_mol", result->ceiling_mn_g_mol);
+    (void)json_object_set_new(o, "working_range", json_range(result));
     for (size_t i = 0; i < fit->warnings.n; i++)
         (void)json_array_append_new(warnings, ce_json_text(fit->warnings.item[i].at.message));
     (void)json_object_set_new(o, "warnings", warnings);

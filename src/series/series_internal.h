@@ -42,6 +42,12 @@ ce_status ce_series_map_columns(const ce_table *table, ce_series_columns *column
  * nothing) or CE_E_NOMEM. */
 ce_status ce_series_read_row(const ce_table *table, const ce_series_columns *columns, size_t i,
                              ce_series_row *row, ce_messages *messages);
+/* Where a run lies whose path is relative to its series file; the caller's to free(), NULL = no memory. */
+char *ce_series_resolve(const char *series_path, const char *run);
+/* An empty series with nothing stated. */
+void ce_series_clear(ce_series *series);
+/* Rows of one name become samples, in order of first appearance. CE_OK or CE_E_NOMEM. */
+ce_status ce_series_group(ce_series *series);
 void ce_series_row_clear(ce_series_row *row);
 
 #endif

@@ -197,6 +197,32 @@ static ce_status add_to_sample(ce_series *series, size_t row)
     return CE_OK;
 }
 
+/* What a sample is, its first row says that is not left out. */
+static const ce_series_row *describe(const ce_series *series, ce_sample *s)
+{
+    const ce_series_row *first = NULL;
+    for (size_t i = 0; i < s->n_rows && first == NULL; i++)
+        if (series->row[s->row[i]].role != CE_LEFT_OUT) first = &series->row[s->row[i]];
+    if (first == NULL) first = &series->row[s->row[0]];
+    s->role = first->role;
+    s->mn_g_mol = first->mn_g_mol;
+    s->mn_u_g_mol = first->mn_u_g_mol;
+    s->mw_g_mol = first->mw_g_mol;
+    s->chain_ends = isnan(first->chain_ends) ? 2.0 : first->chain_ends;
+    return first;
+}
+
+ce_status ce_series_group(ce_series *series)
+{
+    series->sample = calloc(series->n_rows > 0 ? series->n_rows : 1, sizeof *series->sample);
+    if (series->sample == NULL) return CE_E_NOMEM;
+    ce_status st = CE_OK;
+    for (size_t i = 0; i < series->n_rows && st == CE_OK; i++) st = add_to_sample(series, i);
+    for (size_t k = 0; k < series->n_samples && st == CE_OK; k++)
+        (void)describe(series, &series->sample[k]);
+    return st;
+}
+
 static bool differ(double a, double b)
 {
     return !(isnan(a) && isnan(b)) && !(fabs(a - b) <= 1e-9 * fabs(a));
@@ -206,11 +232,10 @@ static bool differ(double a, double b)
 static ce_status check_sample(const ce_series *series, ce_sample *s, ce_messages *messages,
                               bool *faulty)
 {
-    const ce_series_row *first = NULL;
+    const ce_series_row *first = describe(series, s);
     for (size_t i = 0; i < s->n_rows; i++) {
         const ce_series_row *row = &series->row[s->row[i]];
         if (row->role == CE_LEFT_OUT) continue;
-        if (first == NULL) first = row;
         const char *what = row->role != first->role                     ? "role"
                            : differ(row->mn_g_mol, first->mn_g_mol)     ? "mn"
                            : differ(row->mn_u_g_mol, first->mn_u_g_mol) ? "mn_u"
@@ -225,12 +250,6 @@ static ce_status check_sample(const ce_series *series, ce_sample *s, ce_messages
                             row->sample, what, first->line) != CE_OK)
             return CE_E_NOMEM;
     }
-    if (first == NULL) first = &series->row[s->row[0]];
-    s->role = first->role;
-    s->mn_g_mol = first->mn_g_mol;
-    s->mn_u_g_mol = first->mn_u_g_mol;
-    s->mw_g_mol = first->mw_g_mol;
-    s->chain_ends = isnan(first->chain_ends) ? 2.0 : first->chain_ends;
     return CE_OK;
 }
 
@@ -274,7 +293,7 @@ static ce_status check_definition(ce_series *series, ce_messages *messages, bool
 /* ---- the whole ---------------------------------------------------------------------------- */
 
 /* Run paths are relative to where the series file is. */
-static char *resolve(const char *series_path, const char *run)
+char *ce_series_resolve(const char *series_path, const char *run)
 {
     const char *slash = strrchr(series_path, '/');
     if (run[0] == '/' || slash == NULL || strcmp(series_path, "-") == 0) return strdup(run);
@@ -300,7 +319,7 @@ static ce_status read_rows(const ce_table *table, const ce_series_columns *colum
             continue;
         }
         series->n_rows++;
-        if (row->run != NULL && (row->path = resolve(series->path, row->run)) == NULL)
+        if (row->run != NULL && (row->path = ce_series_resolve(series->path, row->run)) == NULL)
             return CE_E_NOMEM;
     }
     return CE_OK;
@@ -308,10 +327,7 @@ static ce_status read_rows(const ce_table *table, const ce_series_columns *colum
 
 static ce_status gather(ce_series *series, ce_messages *messages, bool *faulty)
 {
-    series->sample = calloc(series->n_rows > 0 ? series->n_rows : 1, sizeof *series->sample);
-    if (series->sample == NULL) return CE_E_NOMEM;
-    ce_status st = CE_OK;
-    for (size_t i = 0; i < series->n_rows && st == CE_OK; i++) st = add_to_sample(series, i);
+    ce_status st = ce_series_group(series);
     for (size_t k = 0; k < series->n_samples && st == CE_OK; k++)
         st = check_sample(series, &series->sample[k], messages, faulty);
     if (st == CE_OK) st = check_duplicates(series, messages, faulty);
@@ -360,7 +376,7 @@ static ce_status finish(ce_status st, const ce_table *table, const char *name, c
     return st;
 }
 
-static void clear(ce_series *series)
+void ce_series_clear(ce_series *series)
 {
     *series = (ce_series){.construction = CE_HALF_STEP,
                           .rate_K_min = (double)NAN,
@@ -376,7 +392,7 @@ static void clear(ce_series *series)
 ce_status ce_series_read(const char *path, ce_series *series, ce_messages *messages, ce_error *err)
 {
     ce_table table;
-    clear(series);
+    ce_series_clear(series);
     ce_status st = ce_table_read(path, NULL, &table, err);
     st = finish(st, &table, path, series, messages, err);
     ce_table_free(&table);
@@ -387,7 +403,7 @@ ce_status ce_series_read_memory(const void *bytes, size_t n, const char *name, c
                                 ce_messages *messages, ce_error *err)
 {
     ce_table table;
-    clear(series);
+    ce_series_clear(series);
     ce_status st = ce_table_read_memory(bytes, n, name, NULL, &table, err);
     st = finish(st, &table, name, series, messages, err);
     ce_table_free(&table);
@@ -410,5 +426,5 @@ void ce_series_free(ce_series *series)
     free(series->polymer);
     free(series->scope);
     free(series->temperature_correction);
-    clear(series);
+    ce_series_clear(series);
 }

@@ -2,7 +2,7 @@
 # Sourced by examples/run and tests/run: what must be installed, how it gets installed, how we build.
 # Functions only; the caller has set -eu and stands in the top folder of the repository.
 
-build_packages="gcc make cmake ninja-build pkg-config libgsl-dev libcsv-dev libjansson-dev"
+build_packages="gcc make cmake ninja-build pkg-config libgsl-dev libcsv-dev libjansson-dev nettle-dev"
 run_packages="gnuplot-nox"
 test_packages="libcmocka-dev bats python3 python3-scipy r-base-core mandoc valgrind clang clang-format
   clang-tidy libclang-rt-14-dev locales jq git"
@@ -32,7 +32,7 @@ missing_elsewhere() {
         command -v "$tool" >/dev/null 2>&1 || printf '%s ' "$tool"
     done
     if command -v pkg-config >/dev/null 2>&1; then
-        for module in gsl jansson; do
+        for module in gsl jansson nettle; do
             pkg-config --exists "$module" || printf '%s ' "$module (with headers)"
         done
     fi

@@ -1,0 +1,1 @@
+ce_unit_test(record record)
