@@ -26,7 +26,7 @@ static const double prior_sd[CE_SHAPES] = {
     [S_HOOK] = 1.0,    /* ln of the decay of the start-up in K, around 3 K                     */
 };
 /* The start-up decays on a time of its own and, faster, on the instrument's lag. */
-enum { L_GLASS, L_GLASS_SLOPE, L_STEP, L_STEP_SLOPE, L_HOOK, L_LAGGING, L_CURVE };
+enum { L_GLASS, L_GLASS_SLOPE, L_STEP, L_STEP_SLOPE, L_HOOK, L_LAGGING };
 static const double lever_K = 50.0; /* unit of the slopes: K */
 
 static double logistic(double v)
@@ -103,7 +103,6 @@ static void columns(const ce_model *m, const double *shape, known_modes *known, 
         row[L_STEP_SLOPE] = step[i] * (tf[i] - m->ref_K) / lever_K;
         row[L_HOOK] = hook_at(m, hook, low[i], high[i]);
         row[L_LAGGING] = hook_at(m, lagging, low[i], high[i]);
-        row[L_CURVE] = m->curved && t < 0.0 ? t * t : 0.0;
     }
 }
 
@@ -412,7 +411,6 @@ static bool problem_open(problem *p, ce_model *model, const ce_cells *cells, dou
     p->linear_prior[L_STEP_SLOPE] = 1.0 / (0.4 * step);
     p->linear_prior[L_HOOK] = 1.0 / (30.0 * step);
     p->linear_prior[L_LAGGING] = 1.0 / (30.0 * step);
-    p->linear_prior[L_CURVE] = 1.0 / (0.05 * step);
     *room = calloc(4 * n + rows + 3 * rows * CE_LINEAR, sizeof **room);
     if (*room == NULL) return false;
     p->tf = *room;

@@ -36,11 +36,11 @@ typedef struct {
     double *sd;         /* what the model may miss there, besides the noise; 0 to begin with    */
 } ce_cells;
 
-enum { CE_SHAPES = 9, CE_LINEAR = 7, CE_FREE = CE_SHAPES + CE_LINEAR };
+enum { CE_SHAPES = 9, CE_LINEAR = 6, CE_FREE = CE_SHAPES + CE_LINEAR };
 
 /* The fitted model: Cp-like signal = glass line + step * (step height along Tf) + start-up. */
 typedef struct {
-    bool cooling, curved;
+    bool cooling;
     bool aged;               /* annealing and instrument lag are fitted too                   */
     double ref_K;            /* origin of the lines                                           */
     double fine_K;           /* step of the integration near the transition                   */
