@@ -56,9 +56,9 @@ typedef enum {
     CE_FLAG_HEATINGS_DIFFER, /* number = first minus this heating, K */
     CE_FLAG_SIGN_GUESSED, /* heat-flow sign taken from the step                                 */
     CE_FLAG_STEP_IMPLAUSIBLE, /* step outside 0.15-0.65 J/(g K): number = step, J/(g K) */
-    CE_FLAG_ROUGH,      /* number = what is left unexplained beyond the noise, step heights   */
+    CE_FLAG_ROUGH,        /* number = what is left unexplained beyond the noise, step heights   */
     CE_FLAG_NOT_MONOTONE, /* number = steps back of the temperature in the segment            */
-    CE_FLAG_NO_OVERLAP, /* windows given by the user do not enclose a step                    */
+    CE_FLAG_NO_OVERLAP,   /* windows given by the user do not enclose a step                    */
     CE_FLAGS
 } ce_flag_code;
 typedef struct {

@@ -9,12 +9,16 @@
 /* Days from civil, proleptic Gregorian calendar (ISO 8601). */
 double cli_day(const char *date)
 {
-    int y, m, d, used = 0;
     static const int before[] = {0, 31, 59, 90, 120, 151, 181, 212, 243, 273, 304, 334};
     static const int length[] = {31, 29, 31, 30, 31, 30, 31, 31, 30, 31, 30, 31};
-    if (date == NULL || sscanf(date, "%4d-%2d-%2d%n", &y, &m, &d, &used) != 3 ||
-        date[used] != '\0' || used != 10 || m < 1 || m > 12 || d < 1 || d > length[m - 1])
-        return (double)NAN;
+    static const char form[] = "dddd-dd-dd";
+    if (date == NULL || strlen(date) != sizeof form - 1) return (double)NAN;
+    for (size_t i = 0; form[i] != '\0'; i++)
+        if (form[i] == 'd' ? date[i] < '0' || date[i] > '9' : date[i] != form[i])
+            return (double)NAN;
+    const int y = (int)strtol(date, NULL, 10), m = (int)strtol(date + 5, NULL, 10),
+              d = (int)strtol(date + 8, NULL, 10);
+    if (m < 1 || m > 12 || d < 1 || d > length[m - 1]) return (double)NAN;
     const bool leap = (y % 4 == 0 && y % 100 != 0) || y % 400 == 0;
     if (m == 2 && d == 29 && !leap) return (double)NAN;
     const int past = (y - 1) / 4 - (y - 1) / 100 + (y - 1) / 400;

@@ -226,18 +226,28 @@ ce_status cli_add_layouts(void *to, const char *value, ce_error *err)
     return CE_OK;
 }
 
-/* The layouts named so far, or the default one when none was. */
-#define FOR_LAYOUTS(l, to)                                                                         \
-    ensure_layout(to);                                                                             \
-    for (ce_layout *l = ((cli_simulating *)(to))->layout,                                          \
-                   *end_ = l + ((cli_simulating *)(to))->n_layouts;                                \
-         l < end_; l++)
+/* The layouts named so far, or the default one when none was; *n of them. */
+static ce_layout *named_layouts(void *to, size_t *n)
+{
+    cli_simulating *s = to;
+    ensure_layout(s);
+    *n = s->n_layouts;
+    return s->layout;
+}
+
+/* Sets one member of all of them. */
+#define SET_LAYOUTS(to, member, value)                                                             \
+    do {                                                                                           \
+        size_t n_;                                                                                 \
+        ce_layout *l_ = named_layouts(to, &n_);                                                    \
+        for (size_t i_ = 0; i_ < n_; i_++) l_[i_].member = (value);                                \
+    } while (0)
 
 ce_status cli_set_last_heating_only(void *to, const char *value, ce_error *err)
 {
     (void)value;
     (void)err;
-    FOR_LAYOUTS(l, to) l->last_heating_only = true;
+    SET_LAYOUTS(to, last_heating_only, true);
     return CE_OK;
 }
 
@@ -245,7 +255,7 @@ ce_status cli_set_hidden_sign(void *to, const char *value, ce_error *err)
 {
     (void)value;
     (void)err;
-    FOR_LAYOUTS(l, to) l->state_sign = false;
+    SET_LAYOUTS(to, state_sign, false);
     return CE_OK;
 }
 
@@ -254,7 +264,7 @@ ce_status cli_set_layout_sign(void *to, const char *value, ce_error *err)
     ce_sign sign;
     ce_status st = cli_set_sign(&sign, value, err);
     if (st != CE_OK) return st;
-    FOR_LAYOUTS(l, to) l->exo_up = sign == CE_SIGN_EXO_UP;
+    SET_LAYOUTS(to, exo_up, sign == CE_SIGN_EXO_UP);
     return CE_OK;
 }
 
@@ -263,7 +273,7 @@ ce_status cli_set_layout_delimiter(void *to, const char *value, ce_error *err)
     char mark;
     ce_status st = cli_set_delimiter(&mark, value, err);
     if (st != CE_OK) return st;
-    FOR_LAYOUTS(l, to) l->delimiter = mark;
+    SET_LAYOUTS(to, delimiter, mark);
     return CE_OK;
 }
 
@@ -272,35 +282,35 @@ ce_status cli_set_layout_decimal(void *to, const char *value, ce_error *err)
     char mark;
     ce_status st = cli_set_decimal(&mark, value, err);
     if (st != CE_OK) return st;
-    FOR_LAYOUTS(l, to) l->decimal = mark;
+    SET_LAYOUTS(to, decimal, mark);
     return CE_OK;
 }
 
 ce_status cli_set_encoding(void *to, const char *value, ce_error *err)
 {
     (void)err;
-    FOR_LAYOUTS(l, to) l->encoding = value;
+    SET_LAYOUTS(to, encoding, value);
     return CE_OK;
 }
 
 ce_status cli_set_time_unit(void *to, const char *value, ce_error *err)
 {
     (void)err;
-    FOR_LAYOUTS(l, to) l->time_unit = value;
+    SET_LAYOUTS(to, time_unit, value);
     return CE_OK;
 }
 
 ce_status cli_set_temperature_unit(void *to, const char *value, ce_error *err)
 {
     (void)err;
-    FOR_LAYOUTS(l, to) l->temperature_unit = strcmp(value, "C") == 0 ? "°C" : value;
+    SET_LAYOUTS(to, temperature_unit, strcmp(value, "C") == 0 ? "°C" : value);
     return CE_OK;
 }
 
 ce_status cli_set_signal_unit(void *to, const char *value, ce_error *err)
 {
     (void)err;
-    FOR_LAYOUTS(l, to) l->signal_unit = value;
+    SET_LAYOUTS(to, signal_unit, value);
     return CE_OK;
 }
 

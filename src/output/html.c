@@ -38,6 +38,7 @@ void ce_html_text(FILE *to, const char *s, size_t columns)
     free(clean);
 }
 
+CE_PRINTF(2, 0)
 static void put_formatted(FILE *to, const char *fmt, va_list ap)
 {
     char *text = NULL;

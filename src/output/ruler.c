@@ -50,7 +50,7 @@ static void set(ruler *r, int column, mark m)
 static double tick(int i)
 {
     static const double step[] = {1.0, 2.0, 5.0};
-    return step[i % 3] * pow(10.0, 2 + i / 3);
+    return step[i % 3] * pow(10.0, floor((double)i / 3.0) + 2.0);
 }
 enum { TICKS = 21 };
 

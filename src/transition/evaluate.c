@@ -8,8 +8,11 @@
 #include <string.h>
 
 enum { TRACE = 600 };
-static const size_t most_work = 60;    /* iterations after which no other history is tried    */
-static const double most_rough = 0.03; /* what a model may leave over of a step           */
+static const double roughly = 0.03;   /* of a step, when starts are compared by their gross shape */
+enum { MOST_TRIED = 5 };              /* histories fitted from, of those listed              */
+static const size_t most_work = 100;  /* iterations after which no other is                  */
+static const double most_prior = 9.0; /* chi-square of the priors: as many as there are      */
+static const double most_rough = 0.03;       /* what a model may leave over of a step           */
 static const double straight_glass_K = 60.0; /* a glass line is no line over much more            */
 static const double last_K = 1.5; /* of a segment, where the programme may already be turning   */
 static const double least_baseline_K = 10.0; /* beside the step, else the run cuts it off       */
@@ -19,7 +22,7 @@ static const double inexact_steps = 1e-3; /* what the model may miss of a step, 
  * stretched exponential to the last per cent, nor another integration of the same equations, where
  * a first-order scheme in steps of 0.05 K is off by 0.8 % of a step. There the curve itself is read,
  * and the lines must not bend to it. */
-static const double inexact_peak = 0.01;
+static const double inexact_peak = 0.01; /* of the overshoot's height over the glass line */
 
 /* Room for one trace. */
 typedef struct {
@@ -222,15 +225,23 @@ static bool gradients(by_model *f, modelling *m)
 
 static void weigh_cells(const by_windows *s, ce_cells *cells)
 {
-    /* below the glass window the start-up need not be the exponential of the model */
-    for (size_t i = 0; i < cells->n; i++) {
+    /* below the glass window (on cooling: above the liquid one) the start-up need not be what the
+     * model makes of it; where it crosses the line it is no better known than beside it */
+    double off = 0.0;
+    const bool down = s->curve->cooling;
+    for (size_t k = cells->n; k-- > 0;) {
+        const size_t i = down ? cells->n - 1 - k : k;
         const double T = cells->T[i];
-        const double off = T < s->glass.low_K ? cells->y[i] - ce_line_at(&s->g.line, T) : 0.0;
+        if (!down && T < s->glass.low_K)
+            off = fmax(off, fabs(cells->y[i] - ce_line_at(&s->g.line, T)));
+        if (down && T > s->liquid.high_K)
+            off = fmax(off, fabs(cells->y[i] - ce_line_at(&s->l.line, T)));
         /* centred and as wide as overshoots are, between half-step and the liquid line */
         const double peak = (T - s->p.at[CE_HALF_STEP] - 0.8 * s->width) / (0.7 * s->width);
-        cells->sd[i] =
-            hypot(hypot(inexact_steps, inexact_peak * exp(-0.5 * peak * peak)) * s->p.step,
-                  inexact_start * off);
+        cells->sd[i] = hypot(
+            hypot(inexact_steps, inexact_peak * (1.0 + s->p.overshoot) * exp(-0.5 * peak * peak)) *
+                s->p.step,
+            inexact_start * off);
     }
 }
 
@@ -249,6 +260,13 @@ static double expected_misfit(const ce_cells *cells, double sigma)
 static ce_status try_model(by_model *f, double step, ce_model next, ce_status so_far)
 {
     ce_design design = {0};
+    if (next.least_sd >
+        0.0) { /* from the gross shape to the fine one                              */
+        const ce_status rough = ce_model_fit(&f->cells, step, &next, NULL);
+        f->work += next.iterations;
+        if (rough != CE_OK) return rough == CE_E_NOMEM ? rough : so_far;
+        next.least_sd = 0.0;
+    }
     const ce_status st = ce_model_fit(&f->cells, step, &next, &design);
     f->work += next.iterations;
     if (st == CE_OK && (so_far != CE_OK || next.total < 0.9 * f->model.total)) {
@@ -261,27 +279,63 @@ static ce_status try_model(by_model *f, double step, ce_model next, ce_status so
     return st == CE_E_NOMEM ? st : so_far;
 }
 
-/* One history after the other until one does: cooled at the rate of the scan, slower, faster;
- * annealed, from the best of these and afresh. */
+/* Histories to begin from where the plain one (cooled at the rate of the scan) does not do: glasses
+ * from poly(vinyl chloride) to polystyrene, cooled seven times slower to faster, or annealed near and
+ * far below the step. */
+#define OF_GLASS(unit, x)                                                                          \
+    {unit, x, -2.0, 0.0, 0.0}, {unit, x, -0.7, 0.0, 0.0}, {unit, x, 0.7, 0.0, 0.0},                \
+        {unit, x, 2.0, 0.0, 0.0}, {unit, x, 0.5, 3.0, 8.0}, {unit, x, 0.5, 5.5, 10.0},             \
+        {unit, x, 0.5, 8.0, 14.0},                                                                 \
+    {                                                                                              \
+        unit, x, 0.5, 5.5, 20.0                                                                    \
+    }
+static const ce_history histories[] = {OF_GLASS(-0.55, -1.6), OF_GLASS(0.0, -1.2),
+                                       OF_GLASS(0.55, -0.85)};
+enum { HISTORIES = sizeof histories / sizeof *histories };
+
+static int by_total(const void *a, const void *b)
+{
+    const double x = ((const ce_model *)a)->total, y = ((const ce_model *)b)->total;
+    return (x > y) - (x < y);
+}
+
+/* Neither the curve nor what is known of glasses asks for another history. */
+static bool fits_well(const by_model *f)
+{
+    const double expected = expected_misfit(&f->cells, f->model.sigma);
+    const double priors = f->model.total - f->model.misfit * (double)f->cells.n;
+    const double luck =
+        3.0 * sqrt(2.0 / (double)f->cells.n); /* of a mean of squares              */
+    return f->model.misfit < (1.0 + luck) * expected + 0.05 && priors < most_prior;
+}
+
+/* From the plain history; where that does not do, from those of the list that come nearest. */
 static ce_status try_histories(by_model *f, double step, const ce_model *start)
 {
-    static const double cooled[] = {0.0, 2.0, -2.0};
-    const double good = 1.1 * expected_misfit(&f->cells, start->sigma) + 0.05;
-    ce_status st = CE_E_NOFIT;
-    for (size_t k = 0; k < sizeof cooled / sizeof *cooled && f->work < most_work / 2; k++) {
-        ce_model next = *start;
-        ce_model_cooled(&next, cooled[k]);
-        st = try_model(f, step, next, st);
-        if (st == CE_E_NOMEM || start->cooling || (st == CE_OK && f->model.misfit < good))
-            return st;
+    ce_status st = try_model(f, step, *start, CE_E_NOFIT);
+    if (st == CE_E_NOMEM || start->cooling || (st == CE_OK && fits_well(f))) return st;
+    ce_model *from = malloc(HISTORIES * sizeof *from);
+    if (from == NULL) return CE_E_NOMEM;
+    for (size_t k = 0; k < HISTORIES; k++) {
+        from[k] = *start;
+        from[k].least_sd = roughly * step;
+        ce_model_history(&from[k], &histories[k]);
+        if (ce_model_try(&f->cells, step, &from[k]) != CE_OK) {
+            free(from);
+            return CE_E_NOMEM;
+        }
     }
-    for (int k = 0; k < 3 && f->work < most_work; k++) {
-        ce_model next = k == 0 && st == CE_OK ? f->model : *start;
-        if (k == 2) ce_model_cooled(&next, 1.5);
-        next.aged = true;
-        st = try_model(f, step, next, st);
-        if (st == CE_E_NOMEM || (st == CE_OK && f->model.misfit < good)) return st;
+    qsort(from, HISTORIES, sizeof *from, by_total);
+    /* the plain fit has been where the others without annealing lead: those with it come first */
+    static const bool annealed[] = {true, false, true, true, false};
+    size_t next[2] = {0};
+    for (size_t k = 0; k < sizeof annealed / sizeof *annealed && f->work < most_work; k++) {
+        size_t *i = &next[annealed[k]];
+        while (from[*i].aged != annealed[k]) ++*i;
+        st = try_model(f, step, from[(*i)++], st);
+        if (st == CE_E_NOMEM || (st == CE_OK && fits_well(f))) break;
     }
+    free(from);
     return st;
 }
 
@@ -290,8 +344,9 @@ static ce_status fit_model(const by_windows *s, ce_window range, by_model *f)
     const ce_curve *c = s->curve;
     const double centre = s->p.at[CE_HALF_STEP];
     const double fine = clamp(s->width / 16.0, fmax(0.1, c->spacing), 0.4);
-    ce_model start = ce_model_start(c->cooling, centre, s->width, fmax(c->noise, 1e-9 * s->p.step),
-                                    c->cooling ? c->T[c->n - 1] : c->T[0]);
+    ce_model start =
+        ce_model_start(c->cooling, centre, s->width, fmax(c->slow_noise, 1e-9 * s->p.step),
+                       c->cooling ? c->T[c->n - 1] : c->T[0]);
     start.fine_K = clamp(s->width / 16.0, 0.15, 0.5);
     ce_status st = ce_cells_make(c, range.low_K, range.high_K, centre, fine, &f->cells);
     if (st != CE_OK) return st;
@@ -343,11 +398,24 @@ static ce_status window_part(const by_model *f, double sum[CE_CONSTRUCTIONS + 2]
  * tuning. */
 static const double area_part = 0.05;
 
-/* What histories that fit equally well leave open, K for a step 10 K wide, growing with the cube of
- * the width; from the tuning half of tests/bench/transition_accuracy. */
+/* What histories that fit equally well leave open, K for a step 10 K wide, growing with a power of the
+ * width; from the tuning half of tests/bench/transition_accuracy. */
 static const double model_part[CE_CONSTRUCTIONS] = {
-    [CE_ONSET] = 0.035,     [CE_MIDPOINT] = 0.028, [CE_HALF_STEP] = 0.03,
-    [CE_INFLECTION] = 0.03, [CE_END] = 0.012,      [CE_FICTIVE] = 0.2};
+    [CE_ONSET] = 0.014,      [CE_MIDPOINT] = 0.011, [CE_HALF_STEP] = 0.012,
+    [CE_INFLECTION] = 0.012, [CE_END] = 0.005,      [CE_FICTIVE] = 0.08};
+static const double power = 4.0;
+
+/* A step that changes with temperature counts at the fictive temperature (Moynihan et al. 1976), but
+ * often is taken at the temperature of the sample: either reading is half of the doubt, so that the
+ * standard uncertainty is that of a uniform distribution between them, K. */
+static double reading_of_step(const by_model *f, const modelling *m)
+{
+    double apart = 0.0;
+    for (size_t i = FAR; i < m->n; i++)
+        apart +=
+            (0.5 * (m->low[i] + m->high[i]) - m->tf[i]) * m->step[i] * (m->high[i] - m->low[i]);
+    return fabs(apart * (f->lines.liquid.slope - f->lines.glass.slope) / f->p.step) / sqrt(3.0);
+}
 
 static ce_status model_uncertainty(const by_windows *s, by_model *f, modelling *m,
                                    const ce_transition_options *o, ce_finding *out)
@@ -356,12 +424,15 @@ static ce_status model_uncertainty(const by_windows *s, by_model *f, modelling *
     if (!gradients(f, m)) return CE_E_NOFIT;
     if (o->ensemble && window_part(f, sum) == CE_E_NOMEM) return CE_E_NOMEM;
     const double least = 0.01 * s->curve->spacing + 1e-3;
-    const double broad =
-        pow(s->width / 10.0, 3.0) * (f->model.aged || f->p.overshoot > 0.2 ? 2.0 : 1.0);
+    const double broad = pow(s->width / 10.0, power);
     for (int k = 0; k < CE_CONSTRUCTIONS; k++) {
-        out->u_noise[k] = hypot(sqrt(variance(f, (size_t)k)), least);
-        out->u_window[k] = hypot(sqrt(sum[k]), model_part[k] * broad);
+        const double noise = variance(f, (size_t)k);
+        out->u_noise[k] = hypot(sqrt(noise), least);
+        /* the stretches differ by their noise too: that is counted already */
+        out->u_window[k] = hypot(sqrt(fmax(sum[k] - noise, 0.0)), model_part[k] * broad);
     }
+    out->u_window[CE_FICTIVE] =
+        hypot(out->u_window[CE_FICTIVE], hypot(area_part, reading_of_step(f, m)));
     out->step_u = sqrt(variance(f, CE_CONSTRUCTIONS) + sum[CE_CONSTRUCTIONS]);
     out->width_u = sqrt(variance(f, CE_CONSTRUCTIONS + 1) + sum[CE_CONSTRUCTIONS + 1]);
     return CE_OK;
@@ -409,7 +480,7 @@ static double roughness(const by_windows *s, const by_model *f)
 static bool follows(const by_windows *s, const by_model *f, double rough)
 {
     const double apart = fabs(f->p.at[CE_HALF_STEP] - s->p.at[CE_HALF_STEP]);
-    return rough < most_rough && apart < fmax(0.5 * s->width, 2.0) && f->p.step > 0.5 * s->p.step &&
+    return rough < most_rough && apart < fmax(0.2 * s->width, 1.0) && f->p.step > 0.5 * s->p.step &&
            f->p.step < 2.0 * s->p.step;
 }
 

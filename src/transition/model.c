@@ -25,7 +25,8 @@ static const double prior_sd[CE_SHAPES] = {
     [S_LAG] = 1.5,     /* ln of the instrument's lag in K, around 0.2 K                        */
     [S_HOOK] = 1.0,    /* ln of the decay of the start-up in K, around 3 K                     */
 };
-enum { L_GLASS, L_GLASS_SLOPE, L_STEP, L_STEP_SLOPE, L_HOOK, L_CURVE };
+/* The start-up decays on a time of its own and, faster, on the instrument's lag. */
+enum { L_GLASS, L_GLASS_SLOPE, L_STEP, L_STEP_SLOPE, L_HOOK, L_LAGGING };
 static const double lever_K = 50.0; /* unit of the slopes: K */
 
 static double logistic(double v)
@@ -74,17 +75,25 @@ static double hook_at(const ce_model *m, double rate, double low, double high)
     return hook_mean(rate * (low - m->hook_from_K), rate * (high - m->hook_from_K));
 }
 
+/* The modes computed last: most shape parameters leave beta alone. */
+typedef struct {
+    double beta; /* 0 = none yet                                                                 */
+    ce_modes modes;
+} known_modes;
+
 /* The columns of the linear parameters at n cells, row by row with stride CE_LINEAR. */
-static void columns(const ce_model *m, const double *shape, const ce_modes *modes, size_t n,
+static void columns(const ce_model *m, const double *shape, known_modes *known, size_t n,
                     const double *low, const double *high, double *tf, double *step, double *out)
 {
     ce_relax r = relax_of(m, shape);
-    if (modes != NULL)
-        r.modes = *modes;
-    else
-        ce_relax_modes(r.beta, &r.modes);
+    if (known->beta != r.beta) {
+        known->beta = r.beta;
+        ce_relax_modes(r.beta, &known->modes);
+    }
+    r.modes = known->modes;
     ce_relax_scan(&r, m->cooling, n, low, high, tf, step);
     const double hook = hook_rate(m, shape);
+    const double lagging = (m->cooling ? 1.0 : -1.0) / r.lag_K;
     for (size_t i = 0; i < n; i++) {
         const double T = 0.5 * (low[i] + high[i]), t = (T - m->ref_K) / lever_K;
         double *row = out + i * CE_LINEAR;
@@ -93,7 +102,7 @@ static void columns(const ce_model *m, const double *shape, const ce_modes *mode
         row[L_STEP] = step[i];
         row[L_STEP_SLOPE] = step[i] * (tf[i] - m->ref_K) / lever_K;
         row[L_HOOK] = hook_at(m, hook, low[i], high[i]);
-        row[L_CURVE] = m->curved && t < 0.0 ? t * t : 0.0;
+        row[L_LAGGING] = hook_at(m, lagging, low[i], high[i]);
     }
 }
 
@@ -110,6 +119,7 @@ typedef struct {
     double *y, *root;  /* weighted signal; root of weight of each cell                          */
     double coef[CE_LINEAR];
     bool used[CE_LINEAR];
+    known_modes known;
 } problem;
 
 /* Orthonormalise phi's columns into q (modified Gram-Schmidt, twice), solve for the coefficients
@@ -167,7 +177,7 @@ static int residual(const gsl_vector *shape, void *data, gsl_vector *f)
 {
     problem *p = data;
     const ce_cells *c = p->cells;
-    columns(p->m, shape->data, NULL, c->n, c->low, c->high, p->tf, p->step, p->phi);
+    columns(p->m, shape->data, &p->known, c->n, c->low, c->high, p->tf, p->step, p->phi);
     weigh(p, p->phi);
     project(p, f->data);
     for (size_t j = 0; j < CE_SHAPES; j++) {
@@ -195,7 +205,10 @@ static void slope_by(problem *p, const double *shape, size_t j, double *out)
                      p->root[i] * p->coef[L_HOOK] / h;
         return;
     }
-    columns(p->m, moved, NULL, c->n, c->low, c->high, p->tf, p->step, p->alt);
+    known_modes other = {
+        0}; /* what the derivatives by the other parameters use stays known         */
+    const bool same = relax_of(p->m, moved).beta == p->known.beta;
+    columns(p->m, moved, same ? &p->known : &other, c->n, c->low, c->high, p->tf, p->step, p->alt);
     weigh(p, p->alt);
     for (size_t i = 0; i < p->rows; i++) {
         double d = 0.0;
@@ -213,7 +226,7 @@ static int jacobian(const gsl_vector *shape, void *data, gsl_matrix *J)
     gsl_matrix_set_zero(J);
     gsl_vector_view tmp = gsl_vector_view_array(p->alt, p->rows);
     const ce_cells *c = p->cells; /* the solver may have tried another point since */
-    columns(p->m, shape->data, NULL, c->n, c->low, c->high, p->tf, p->step, p->phi);
+    columns(p->m, shape->data, &p->known, c->n, c->low, c->high, p->tf, p->step, p->phi);
     weigh(p, p->phi);
     project(p, tmp.vector.data);
     for (size_t j = 0; j < CE_SHAPES; j++) {
@@ -356,9 +369,14 @@ static int solve(problem *p, gsl_vector *shape, ce_design *design)
     return status;
 }
 
-void ce_model_cooled(ce_model *m, double log_ratio)
+void ce_model_history(ce_model *m, const ce_history *h)
 {
-    m->shape[S_COOLING] = log_ratio;
+    m->shape[S_UNIT] = h->unit;
+    m->shape[S_X] = h->x;
+    m->shape[S_COOLING] = h->cooling;
+    m->aged = h->age > 0.0;
+    if (m->aged) m->shape[S_AGE] = h->age;
+    if (m->aged) m->shape[S_AGE_AT] = h->age_below_K;
 }
 
 ce_model ce_model_start(bool cooling, double centre_K, double width_K, double sigma,
@@ -384,41 +402,81 @@ ce_model ce_model_start(bool cooling, double centre_K, double width_K, double si
     return m;
 }
 
+/* Room and weights; false when there is no memory. What is in *room must be freed. */
+static bool problem_open(problem *p, ce_model *model, const ce_cells *cells, double step,
+                         double **room)
+{
+    const size_t n = cells->n, rows = n + CE_LINEAR;
+    *p = (problem){.m = model, .cells = cells, .rows = rows};
+    p->linear_prior[L_STEP_SLOPE] = 1.0 / (0.4 * step);
+    p->linear_prior[L_HOOK] = 1.0 / (30.0 * step);
+    p->linear_prior[L_LAGGING] = 1.0 / (30.0 * step);
+    *room = calloc(4 * n + rows + 3 * rows * CE_LINEAR, sizeof **room);
+    if (*room == NULL) return false;
+    p->tf = *room;
+    p->step = p->tf + n;
+    p->root = p->step + n;
+    p->y = p->root + n;
+    p->phi = p->y + rows;
+    p->alt = p->phi + rows * CE_LINEAR;
+    p->q = p->alt + rows * CE_LINEAR;
+    for (size_t i = 0; i < n; i++) {
+        p->root[i] =
+            1.0 / hypot(model->sigma / sqrt(cells->w[i]), fmax(cells->sd[i], model->least_sd));
+        p->y[i] = cells->y[i] * p->root[i];
+    }
+    return true;
+}
+
 ce_status ce_model_fit(const ce_cells *cells, double step, ce_model *model, ce_design *design)
 {
-    const double sigma = model->sigma;
-    const size_t n = cells->n, rows = n + CE_LINEAR;
-    problem p = {.m = model, .cells = cells, .rows = rows};
-    p.linear_prior[L_STEP_SLOPE] = 1.0 / (0.4 * step);
-    p.linear_prior[L_HOOK] = 1.0 / (30.0 * step);
-    p.linear_prior[L_CURVE] = 1.0 / (0.05 * step);
-    double *room = calloc(4 * n + rows + 3 * rows * CE_LINEAR, sizeof *room);
+    problem p;
+    double *room;
     gsl_vector *shape = gsl_vector_alloc(CE_SHAPES);
-    int status = room == NULL || shape == NULL ? GSL_ENOMEM : GSL_SUCCESS;
-    if (status == GSL_SUCCESS) {
-        p.tf = room;
-        p.step = p.tf + n;
-        p.root = p.step + n;
-        p.y = p.root + n;
-        p.phi = p.y + rows;
-        p.alt = p.phi + rows * CE_LINEAR;
-        p.q = p.alt + rows * CE_LINEAR;
-        for (size_t i = 0; i < n; i++) {
-            p.root[i] = 1.0 / hypot(sigma / sqrt(cells->w[i]), cells->sd[i]);
-            p.y[i] = cells->y[i] * p.root[i];
-        }
+    int status = GSL_ENOMEM;
+    if (shape != NULL && problem_open(&p, model, cells, step, &room)) {
         memcpy(shape->data, model->shape, sizeof model->shape);
         status = solve(&p, shape, design);
+        free(room);
     }
     gsl_vector_free(shape);
-    free(room);
     return status == GSL_SUCCESS ? CE_OK : status == GSL_ENOMEM ? CE_E_NOMEM : CE_E_NOFIT;
+}
+
+/* Where the step of the model first reaches a half. */
+static double half_of(const ce_cells *c, const double *step)
+{
+    size_t i = 0;
+    while (i + 1 < c->n && step[i] < 0.5) i++;
+    return c->T[i];
+}
+
+ce_status ce_model_try(const ce_cells *cells, double step, ce_model *model)
+{
+    problem p;
+    double *room;
+    if (!problem_open(&p, model, cells, step, &room)) return CE_E_NOMEM;
+    double *res = p.alt; /* not needed here otherwise                                           */
+    columns(model, model->shape, &p.known, cells->n, cells->low, cells->high, p.tf, p.step, p.phi);
+    model->shape[S_TR] += model->ref_K - half_of(cells, p.step);
+    columns(model, model->shape, &p.known, cells->n, cells->low, cells->high, p.tf, p.step, p.phi);
+    weigh(&p, p.phi);
+    project(&p, res);
+    model->total = 0.0;
+    for (size_t i = 0; i < p.rows; i++) model->total += res[i] * res[i];
+    for (size_t j = 0; j < CE_SHAPES; j++) {
+        const double off = (model->shape[j] - model->centre[j]) / prior_sd[j];
+        model->total += off * off;
+    }
+    free(room);
+    return CE_OK;
 }
 
 void ce_model_columns(const ce_model *m, size_t n, const double *low, const double *high,
                       double *phi, double *tf, double *step)
 {
-    columns(m, m->shape, NULL, n, low, high, tf, step, phi);
+    known_modes none = {0};
+    columns(m, m->shape, &none, n, low, high, tf, step, phi);
 }
 
 void ce_model_combine(const ce_model *m, size_t n, const double *phi, double *y)
@@ -426,7 +484,7 @@ void ce_model_combine(const ce_model *m, size_t n, const double *phi, double *y)
     for (size_t i = 0; i < n; i++) {
         y[i] = 0.0;
         for (size_t k = 0; k < CE_LINEAR; k++)
-            if (k != L_HOOK) y[i] += m->linear[k] * phi[i * CE_LINEAR + k];
+            if (k != L_HOOK && k != L_LAGGING) y[i] += m->linear[k] * phi[i * CE_LINEAR + k];
     }
 }
 

@@ -12,7 +12,8 @@ static const double pi = 3.14159265358979323846;
 static double density(const double a[ANGLES], const double w[ANGLES], double c, double z)
 {
     double sum = 0.0;
-    for (int i = 0; i < ANGLES; i++) sum += w[i] * a[i] * exp(-a[i] * z);
+    for (int i = 0; i < ANGLES; i++)
+        if (a[i] * z < 45.0) sum += w[i] * a[i] * exp(-a[i] * z); /* the rest is below 1e-19      */
     return c * z * sum;
 }
 

@@ -18,6 +18,7 @@ typedef struct {
     double *T, *y, *w; /* owned, one block; w = number of points in the mean                    */
     bool cooling;      /* measured on the way down                                              */
     double noise;      /* standard deviation of one recorded point, robust; 0 is possible       */
+    double slow_noise; /* what it would be if the noise of means over 0.5 K were white  */
     double spacing;    /* mean distance of the points, K                                        */
 } ce_curve;
 
@@ -39,7 +40,7 @@ enum { CE_SHAPES = 9, CE_LINEAR = 6, CE_FREE = CE_SHAPES + CE_LINEAR };
 
 /* The fitted model: Cp-like signal = glass line + step * (step height along Tf) + start-up. */
 typedef struct {
-    bool cooling, curved;
+    bool cooling;
     bool aged;               /* annealing and instrument lag are fitted too                   */
     double ref_K;            /* origin of the lines                                           */
     double fine_K;           /* step of the integration near the transition                   */
@@ -48,6 +49,7 @@ typedef struct {
     double linear[CE_LINEAR];
     double centre[CE_SHAPES]; /* of the prior                                                  */
     double sigma;             /* sd of a recorded point, for the weights                       */
+    double least_sd;          /* what it may miss in any cell for now, in the signal's unit       */
     double total;             /* chi-square with that of the priors                            */
     double misfit;            /* reduced chi-square against sigma                              */
     double cov[CE_FREE][CE_FREE]; /* of shape and linear parameters at sigma                    */
@@ -83,8 +85,15 @@ ce_status ce_model_reweigh(const ce_design *design, const double *share, double 
 /* A first guess for a step of this half-step temperature and width; sigma > 0. */
 ce_model ce_model_start(bool cooling, double centre_K, double width_K, double sigma,
                         double hook_from_K);
-/* Start from another ratio of the cooling before to the scan, ln. */
-void ce_model_cooled(ce_model *model, double log_ratio);
+/* Another start: ln of Tr^2/h in K, ln of the odds of x over it, cooled before at another rate (ln of
+ * its ratio to the scan), annealed (ln of time times rate of the scan in K; 0 = not) so far below. */
+typedef struct {
+    double unit, x, cooling, age, age_below_K;
+} ce_history;
+void ce_model_history(ce_model *model, const ce_history *history);
+/* How well a start does without any iteration, in model->total; its Tr is moved so that the half-step
+ * lies at the model's origin. CE_OK | CE_E_NOMEM. */
+ce_status ce_model_try(const ce_cells *cells, double step, ce_model *model);
 /* The columns of the linear parameters at n cells, row by row, phi[n * CE_LINEAR], and the fictive
  * temperatures tf[n]. Scratch: step[n]. */
 void ce_model_columns(const ce_model *model, size_t n, const double *low, const double *high,

@@ -148,8 +148,8 @@ static void baselines(void **state)
     ce_transition t = read_step(&c, NULL);
     expect_flag(&t, CE_FLAG_SHORT_WINDOW, 3.0, 8.0);
     c = clean("ps");
-    c.instrument.noise_mW = 0.025; /* wandering: half a minute is 5 K */
-    c.instrument.noise_time_s = 30.0;
+    c.instrument.noise_mW = 0.02; /* wandering: 15 s are 2.5 K */
+    c.instrument.noise_time_s = 15.0;
     t = read_step(&c, NULL);
     expect_flag(&t, CE_FLAG_ROUGH, 0.03, 0.3);
     c = clean("ps");
@@ -164,11 +164,11 @@ static void neighbours_and_ends(void **state)
     (void)state;
     ce_simulation_config c = clean("ps");
     c.n_peaks = 1;
-    c.peak[0] = (ce_peak){.centre_K = TG + 36.0, .sd_K = 3.0, .enthalpy_J_g = -20.0};
+    c.peak[0] = (ce_peak){.centre_K = TG + 38.0, .sd_K = 3.0, .enthalpy_J_g = -8.0};
     ce_transition t = read_step(&c, NULL);
     expect_flag(&t, CE_FLAG_PEAK_ADJACENT, 3.0, 25.0);
     c = clean("ps");
-    const ce_programme_step short_heat = {.to_K = TG + 14.0, .rate_K_min = 10.0};
+    const ce_programme_step short_heat = {.to_K = TG + 15.0, .rate_K_min = 10.0};
     c.programme.step = &short_heat;
     t = read_step(&c, NULL);
     expect_flag(&t, CE_FLAG_CUT_OFF, 0.2, 10.0);
