@@ -168,7 +168,7 @@ static void neighbours_and_ends(void **state)
     ce_transition t = read_step(&c, NULL);
     expect_flag(&t, CE_FLAG_PEAK_ADJACENT, 3.0, 25.0);
     c = clean("ps");
-    const ce_programme_step short_heat = {.to_K = TG + 15.0, .rate_K_min = 10.0};
+    const ce_programme_step short_heat = {.to_K = TG + 14.6, .rate_K_min = 10.0};
     c.programme.step = &short_heat;
     t = read_step(&c, NULL);
     expect_flag(&t, CE_FLAG_CUT_OFF, 0.2, 10.0);
