@@ -67,14 +67,17 @@ static void put_verdict(const ce_fit_result *result, FILE *to)
     fputs("\n\n", to);
     for (size_t i = 0; i < fit->p; i++) put_parameter(to, fit, i);
     put_intervals(to, fit);
-    if (isfinite(result->ceiling_tg_K))
-        fprintf(
-            to,
-            "\nOne run of an unknown bounds Mn from above up to %s °C (Mn %s kg/mol); a higher Tg "
-            "bounds it from below only.\n",
+    if (isfinite(result->ceiling_tg_K)) {
+        char text[300];
+        (void)snprintf(
+            text, sizeof text,
+            "One run of an unknown bounds Mn from above up to %s °C (Mn %s kg/mol); a higher "
+            "Tg bounds it from below only.",
             ce_fixed(a, ce_degC_from_K(result->ceiling_tg_K), 1),
             ce_kg_mol(b, result->ceiling_mn_g_mol));
-    else
+        fputc('\n', to);
+        ce_text_wrap(to, text, 0, 0, CE_TEXT_WIDTH);
+    } else
         fputs("\nThe dependence on Mn is not significant: no Tg bounds Mn on both sides.\n", to);
 }
 
@@ -257,8 +260,7 @@ static ce_status put_resampled(const ce_fit *fit, FILE *to, bool colour)
             ce_sheet_cell(&sheet, "%s", ce_fixed(text, cell[c], places));
     }
     fprintf(to,
-            "\nwhole standards resampled %zu times, seed %llu: a check that covers less than it "
-            "says with few standards\n",
+            "\nwhole standards resampled %zu times (seed %llu); with few standards this says too little\n",
             fit->n_resampled, (unsigned long long)fit->options.seed);
     return ce_sheet_print(&sheet, to, 0, colour);
 }

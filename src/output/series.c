@@ -102,8 +102,8 @@ ce_status ce_write_series_text(const ce_series *series, FILE *to, bool colour)
             standards == 1 ? "" : "s", series->n_samples, series->n_samples == 1 ? "" : "s", runs,
             runs == 1 ? "" : "s");
     char *polymer =
-        ce_text_shown(series->polymer == NULL ? "polymer not stated" : series->polymer, 70);
-    fprintf(to, "%s; Tg is ", polymer == NULL ? "" : polymer);
+        ce_text_shown(series->polymer == NULL ? "polymer not stated" : series->polymer, 96);
+    fprintf(to, "%s\nTg is ", polymer == NULL ? "" : polymer);
     free(polymer);
     ce_write_definition(series->construction, series->rate_K_min, series->history, to);
     fputs("\n\n", to);

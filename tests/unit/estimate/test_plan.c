@@ -4,6 +4,7 @@
  * (2007), ch 10 and 11, from memory. */
 #include "check.h"
 
+#include "base/counter_rng.h"
 #include "estimate/design.h"
 #include "estimate/fits.h"
 
@@ -143,13 +144,64 @@ static void options_and_limits(void **state)
     ce_plan_free(&plan);
 }
 
+/* The plan carried out 400 times: the mean half-width the fits give is what was promised, within 10 %. */
+static void promises_are_kept(void **state)
+{
+    (void)state;
+    const ce_fit fit = known(0.05);
+    const double at = 20000.0;
+    ce_plan plan;
+    ce_plan_options o = ce_plan_options_default();
+    o.want = 0.08;
+    o.standard_cost = 2.0;
+    assert_int_equal(ce_plan_make(&fit, 1, &at, &o, &plan, NULL), CE_OK);
+    assert_true(plan.met && plan.n_steps > 0);
+    enum { MOST = N + 64, RUNS = 64 };
+    static double mn[MOST], tg[MOST][RUNS];
+    static size_t runs[MOST];
+    size_t n = N;
+    for (size_t i = 0; i < N; i++) mn[i] = ff8_exact_mn[i], runs[i] = 3;
+    for (size_t i = 0; i < plan.n_steps; i++) {
+        const ce_plan_step *t = &plan.step[i];
+        if (t->kind == CE_PLAN_STANDARD_RUN) runs[t->point]++;
+        if (t->kind == CE_PLAN_NEW_STANDARD) mn[n] = t->mn_g_mol, runs[n++] = o.runs_per_standard;
+    }
+    double sum = 0.0;
+    const int series = 400;
+    for (int k = 0; k < series; k++) {
+        ce_counter_rng rng = ce_counter_rng_start(7, (uint64_t)k);
+        ce_standard s[MOST];
+        for (size_t i = 0; i < n; i++) {
+            const double stated = mn[i] * (1.0 + 0.05 * ce_counter_rng_normal(&rng));
+            for (size_t j = 0; j < runs[i]; j++)
+                tg[i][j] = 388.0 - 180000.0 / mn[i] + 0.5 * ce_counter_rng_normal(&rng);
+            s[i] = (ce_standard){
+                "S", {stated, (double)NAN, 2.0}, 0.05 * stated, runs[i], tg[i], NULL, 0.0};
+        }
+        ce_fit_options options = ce_fit_options_default();
+        options.compare = options.diagnose = false;
+        options.excess = CE_EXCESS_NONE;
+        ce_fit one;
+        assert_int_equal(ce_fit_relation(n, s, &options, &one, NULL), CE_OK);
+        double mean = 388.0 - 180000.0 / at;
+        for (size_t j = 0; j < plan.unknown_runs; j++)
+            mean += 0.5 * ce_counter_rng_normal(&rng) / (double)plan.unknown_runs;
+        const ce_unknown u = mean_reading(&mean, plan.unknown_runs);
+        ce_estimate e;
+        assert_int_equal(ce_estimate_mn(&one, &u, 0.0, &e, NULL), CE_OK);
+        sum += 0.5 * (e.high_g_mol - e.low_g_mol) / at / series;
+        ce_fit_free(&one);
+    }
+    assert_digits(sum, plan.target[0].then, 0.1);
+    ce_plan_free(&plan);
+}
+
 int main(void)
 {
     const struct CMUnitTest tests[] = {
-        cmocka_unit_test(a_further_standard),
-        cmocka_unit_test(a_further_run),
-        cmocka_unit_test(two_points_at_the_ends),
-        cmocka_unit_test(options_and_limits),
+        cmocka_unit_test(a_further_standard),     cmocka_unit_test(a_further_run),
+        cmocka_unit_test(two_points_at_the_ends), cmocka_unit_test(options_and_limits),
+        cmocka_unit_test(promises_are_kept),
     };
     (void)gsl_set_error_handler_off();
     return cmocka_run_group_tests_name("estimate/plan", tests, NULL, NULL);
