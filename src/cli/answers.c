@@ -57,6 +57,20 @@ size_t cli_count_unknowns(const ce_series *series)
     return n;
 }
 
+ce_fit_result cli_fit_result(const cli_calibration *c)
+{
+    return (ce_fit_result){.fit = &c->fit,
+                           .construction = c->series.construction,
+                           .rate_K_min = c->series.rate_K_min,
+                           .history = c->series.history,
+                           .n_range = c->n_range,
+                           .range = c->range,
+                           .series = &c->series,
+                           .polymer = c->series.polymer,
+                           .ceiling_tg_K = c->ceiling_tg_K,
+                           .ceiling_mn_g_mol = c->ceiling_mn_g_mol};
+}
+
 ce_estimate_result cli_estimate_result(const cli_calibration *c, const ce_answer *answer, size_t n)
 {
     return (ce_estimate_result){.n = n,

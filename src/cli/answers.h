@@ -5,6 +5,7 @@
 
 #include "cli/calibration.h"
 #include "output/estimate.h"
+#include "output/fit.h"
 
 /* How unknowns are answered. */
 typedef struct {
@@ -20,6 +21,8 @@ void cli_answer(const cli_calibration *c, const cli_answering *how, const ce_unk
 void cli_answer_sample(const cli_calibration *c, const cli_answering *how, const ce_sample *s,
                        ce_answer *answer);
 size_t cli_count_unknowns(const ce_series *series);
+/* A calibration as it is shown; borrows from it. */
+ce_fit_result cli_fit_result(const cli_calibration *c);
 /* What surrounds n answers when they are shown. */
 ce_estimate_result cli_estimate_result(const cli_calibration *c, const ce_answer *answer, size_t n);
 /* Every unknown of the series; result->n of them. NULL when out of memory. */

@@ -1,5 +1,5 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
-#include "cli/calibration.h"
+#include "cli/answers.h"
 #include "cli/cli.h"
 #include "cli/commands.h"
 
@@ -47,16 +47,7 @@ int cmd_fit(int argc, char **argv)
         cli_calibration_free(&calibration);
         return XIT_FAILED;
     }
-    ce_fit_result result = {.fit = &calibration.fit,
-                            .construction = calibration.series.construction,
-                            .rate_K_min = calibration.series.rate_K_min,
-                            .history = calibration.series.history,
-                            .n_range = calibration.n_range,
-                            .range = calibration.range,
-                            .series = &calibration.series,
-                            .polymer = calibration.series.polymer,
-                            .ceiling_tg_K = calibration.ceiling_tg_K,
-                            .ceiling_mn_g_mol = calibration.ceiling_mn_g_mol};
+    const ce_fit_result result = cli_fit_result(&calibration);
     status = cli_deliver(&command, &common, ce_write_fit, &result, status);
     cli_calibration_free(&calibration);
     return status;

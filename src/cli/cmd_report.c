@@ -145,16 +145,7 @@ static int deliver(const arguments *a, const cli_calibration *c, page *p, int st
     r->series = &c->series;
     r->n_versions = sizeof versions / sizeof *versions;
     r->version = versions;
-    r->fit = (ce_fit_result){.fit = &c->fit,
-                             .construction = c->series.construction,
-                             .rate_K_min = c->series.rate_K_min,
-                             .history = c->series.history,
-                             .series = &c->series,
-                             .polymer = c->series.polymer,
-                             .n_range = c->n_range,
-                             .range = c->range,
-                             .ceiling_tg_K = c->ceiling_tg_K,
-                             .ceiling_mn_g_mol = c->ceiling_mn_g_mol};
+    r->fit = cli_fit_result(c);
     return cli_deliver(&command, &a->common, write_page, r, status);
 }
 

@@ -17,10 +17,8 @@ static void put_verdict(const ce_check_result *result, FILE *to)
     const ce_check *k = result->check;
     fprintf(to, "The calibration %s: %zu control%s, %g %% in all\n",
             k->holds ? "holds" : "does not hold", k->n, k->n == 1 ? "" : "s", 100.0 * k->level);
-    char *polymer =
-        ce_text_shown(result->polymer == NULL ? "polymer not stated" : result->polymer, 90);
-    fprintf(to, "%s\nTg is ", polymer == NULL ? "" : polymer);
-    free(polymer);
+    ce_write_polymer(result->polymer, 96, to);
+    fputs("\nTg is ", to);
     ce_write_definition(result->construction, result->rate_K_min, result->history, to);
     fputs("\n\n", to);
 }

@@ -179,11 +179,10 @@ ce_status ce_write_estimate_text(const ce_estimate_result *result, FILE *to, boo
     if (st == CE_OK) st = put_mn_table(result, to, colour);
     if (st != CE_OK) return st;
     put_remarks(result, to);
-    char *polymer =
-        ce_text_shown(result->polymer == NULL ? "polymer not stated" : result->polymer, 80);
-    fprintf(to, "\ncalibration  %s\n             %s\n             Tg is ",
-            polymer == NULL ? "" : polymer, ce_relation_formula(result->fit->options.relation));
-    free(polymer);
+    fputs("\ncalibration  ", to);
+    ce_write_polymer(result->polymer, 84, to);
+    fprintf(to, "\n             %s\n             Tg is ",
+            ce_relation_formula(result->fit->options.relation));
     ce_write_definition(result->construction, result->rate_K_min, result->history, to);
     fputc('\n', to);
     if (result->celsius_assumed) fputs("Readings without a unit were taken as °C.\n", to);

@@ -59,10 +59,8 @@ static void put_verdict(const ce_fit_result *result, FILE *to)
     char a[CE_NUMBER_ROOM], b[CE_NUMBER_ROOM];
     fprintf(to, "%s\nfitted to %zu standards (%zu runs)\n",
             ce_relation_formula(fit->options.relation), fit->n_points, fit->n_runs);
-    char *polymer =
-        ce_text_shown(result->polymer == NULL ? "polymer not stated" : result->polymer, 90);
-    fprintf(to, "%s\nTg is ", polymer == NULL ? "" : polymer);
-    free(polymer);
+    ce_write_polymer(result->polymer, 96, to);
+    fputs("\nTg is ", to);
     ce_write_definition(result->construction, result->rate_K_min, result->history, to);
     fputs("\n\n", to);
     for (size_t i = 0; i < fit->p; i++) put_parameter(to, fit, i);
@@ -260,7 +258,8 @@ static ce_status put_resampled(const ce_fit *fit, FILE *to, bool colour)
             ce_sheet_cell(&sheet, "%s", ce_fixed(text, cell[c], places));
     }
     fprintf(to,
-            "\nwhole standards resampled %zu times (seed %llu); with few standards this says too little\n",
+            "\nwhole standards resampled %zu times (seed %llu); with few standards this says too "
+            "little\n",
             fit->n_resampled, (unsigned long long)fit->options.seed);
     return ce_sheet_print(&sheet, to, 0, colour);
 }
@@ -286,7 +285,7 @@ static ce_status put_comparison(const ce_fit *fit, FILE *to, bool colour)
         ce_sheet_cell(&sheet, "%s", ce_relation_name(c->relation));
         ce_sheet_cell(&sheet, "%s", ce_fixed(text, ce_degC_from_K(c->tg_inf_K), 1));
         ce_sheet_cell(&sheet, "%s", ce_fixed(text, c->aicc, 1));
-        ce_sheet_cell(&sheet, "%s", ce_fixed(text, c->weight, 3));
+        ce_sheet_cell(&sheet, "%s", ce_fixed(text, isnan(c->aicc) ? (double)NAN : c->weight, 3));
         ce_sheet_cell(&sheet, "%s", ce_kg_mol(text, c->mid_mn_g_mol));
     }
     fputs("\nother relations fitted to the same series\n", to);

@@ -4,6 +4,7 @@
 #include "base/quantity.h"
 #include "output/json.h"
 #include "output/number.h"
+#include "output/series.h"
 #include "output/sheet.h"
 #include "output/text.h"
 
@@ -54,10 +55,8 @@ static void put_verdict(const ce_plan_result *result, FILE *to)
             percent(a, p->want), p->n_steps, ce_kg_mol(b, limit->mn_g_mol),
             percent(c, limit->then));
     ce_text_wrap(to, text, 0, 0, CE_TEXT_WIDTH);
-    char *polymer =
-        ce_text_shown(result->polymer == NULL ? "polymer not stated" : result->polymer, 90);
-    fprintf(to, "%s\n\n", polymer == NULL ? "" : polymer);
-    free(polymer);
+    ce_write_polymer(result->polymer, 96, to);
+    fputs("\n\n", to);
 }
 
 static ce_status put_targets(const ce_plan *p, FILE *to, bool colour)

@@ -25,6 +25,13 @@ void ce_write_definition(ce_construction construction, double rate_K_min, ce_his
         fprintf(to, ", history %s", ce_history_name(history));
 }
 
+void ce_write_polymer(const char *polymer, size_t columns, FILE *to)
+{
+    char *text = ce_text_shown(polymer == NULL ? "polymer not stated" : polymer, columns);
+    fputs(text == NULL ? "" : text, to);
+    free(text);
+}
+
 void ce_write_rate_reduction(const ce_series *series, FILE *to)
 {
     char a[CE_NUMBER_ROOM], b[CE_NUMBER_ROOM], c[CE_NUMBER_ROOM];
@@ -101,10 +108,8 @@ ce_status ce_write_series_text(const ce_series *series, FILE *to, bool colour)
     fprintf(to, "%zu standard%s to fit, %zu sample%s and %zu measurement%s in all\n", standards,
             standards == 1 ? "" : "s", series->n_samples, series->n_samples == 1 ? "" : "s", runs,
             runs == 1 ? "" : "s");
-    char *polymer =
-        ce_text_shown(series->polymer == NULL ? "polymer not stated" : series->polymer, 96);
-    fprintf(to, "%s\nTg is ", polymer == NULL ? "" : polymer);
-    free(polymer);
+    ce_write_polymer(series->polymer, 96, to);
+    fputs("\nTg is ", to);
     ce_write_definition(series->construction, series->rate_K_min, series->history, to);
     fputs("\n\n", to);
     ce_sheet sheet;

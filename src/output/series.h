@@ -15,6 +15,8 @@ CE_DOCUMENT(series, ce_series)
 void ce_write_definition(ce_construction construction, double rate_K_min, ce_history history,
                          FILE *to);
 
+/* The polymer, safe to show and cut to columns; or that it is not stated. */
+void ce_write_polymer(const char *polymer, size_t columns, FILE *to);
 /* How rates were reduced: a line of text, or nothing; an object, or null. */
 void ce_write_rate_reduction(const ce_series *series, FILE *to);
 json_t *ce_json_rate_reduction(const ce_series *series);

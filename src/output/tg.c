@@ -24,10 +24,17 @@ static size_t count_ok(const ce_tg_result *result)
 
 /* ---- text --------------------------------------------------------------------------------- */
 
+/* Of many runs a line has room for these beside the one that is taken; CSV and JSON have all. */
+static bool in_line(ce_construction c, ce_construction take)
+{
+    return c != take && c != CE_MIDPOINT && c != CE_INFLECTION;
+}
+
 static void put_value(ce_sheet *table, const ce_reading *r)
 {
     char text[CE_NUMBER_ROOM];
-    ce_sheet_cell(table, "%s", ce_celsius(text, r->value_K, r->u_K));
+    /* a hundredth of a kelvin is enough where many stand side by side */
+    ce_sheet_cell(table, "%s", ce_celsius(text, r->value_K, fmax(r->u_K, 0.1)));
 }
 
 static void put_step(ce_sheet *table, const ce_transition *t)
@@ -57,7 +64,7 @@ static void put_run_row(ce_sheet *table, const ce_evaluation *e, const ce_transi
     put_value(table, r);
     ce_sheet_cell(table, "%s", ce_fixed(text, r->u_K, ce_decimals(r->u_K)));
     for (size_t c = 0; c < CE_CONSTRUCTIONS; c++)
-        if (order[c] != take) put_value(table, &t->tg[order[c]]);
+        if (in_line(order[c], take)) put_value(table, &t->tg[order[c]]);
     put_step(table, t);
     if (t->n_flags > 0)
         ce_sheet_cell(table, "%zu", t->n_flags);
@@ -87,7 +94,7 @@ static ce_status put_many(const ce_tg_result *result, FILE *to, bool colour)
                                  {"u", "K", CE_POINT}};
     size_t n = 5;
     for (size_t c = 0; c < CE_CONSTRUCTIONS; c++)
-        if (order[c] != result->take)
+        if (in_line(order[c], result->take))
             column[n++] = (ce_sheet_column){ce_construction_name(order[c]), "°C", CE_POINT};
     column[n++] = (ce_sheet_column){"step", step_unit(result), CE_POINT};
     column[n++] = (ce_sheet_column){"flags", "", CE_RIGHT};
