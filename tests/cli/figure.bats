@@ -31,7 +31,7 @@ png_size() { od -An -tu1 -j16 -N8 "$1" | awk '{ print ($1*16777216 + $2*65536 + 
     done
     run_it figure run --picture run.png -o run.gp "$SOURCE/examples/quellstein/runs/Q5-1.txt"
     expect_status 0
-    [ "$(png_size run.png)" = "1004 1004" ]
+    [ "$(png_size run.png)" = "1004 1255" ]
 }
 
 @test "the same input gives the same bytes in two runs and two folders" {
