@@ -42,9 +42,15 @@ static void put_mn_verdict(FILE *to, const char *name, int width, const ce_estim
     fprintf(to, "%s%*s  ", name, width - (int)ce_text_columns(name), "");
     switch (e->bound) {
     case CE_TWO_SIDED:
-        fprintf(to, "Mn = %s kg/mol, %g %% interval %s to %s%s kg/mol\n", ce_kg_mol(a, e->mn_g_mol),
-                percent, ce_kg_mol(b, e->low_g_mol), is_absurd(e) ? "more than " : "",
-                is_absurd(e) ? ce_kg_mol(c, e->cap_g_mol) : high_text(c, e));
+        if (is_absurd(e))
+            fprintf(to,
+                    "Mn = %s kg/mol, %g %% interval %s kg/mol to more than 10 times the largest "
+                    "standard\n",
+                    ce_kg_mol(a, e->mn_g_mol), percent, ce_kg_mol(b, e->low_g_mol));
+        else
+            fprintf(to, "Mn = %s kg/mol, %g %% interval %s to %s kg/mol\n",
+                    ce_kg_mol(a, e->mn_g_mol), percent, ce_kg_mol(b, e->low_g_mol),
+                    ce_kg_mol(c, e->high_g_mol));
         break;
     case CE_LOWER_ONLY:
         fprintf(to,
