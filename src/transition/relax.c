@@ -39,12 +39,13 @@ void ce_relax_modes(double beta, ce_modes *modes)
     modes->weight[modes->chains - 1][modes->n - 1] += 1.0 - sum;
 }
 
-/* The modes lag by u[k] = T - Tf_k, their weighted sum is T - Tf; slope is dTf/dT lately; seen is what a
- * lagging instrument shows of it, area the integral of that over temperature. */
+/* The modes lag by u[k] = T - Tf_k, their weighted sum is T - Tf; slope is the mean of dTf/dT over the
+ * last step, bend the change of dTf/dT over temperature since the step before, w the length of the last
+ * step; seen is what a lagging instrument shows of dTf/dT, area the integral of that over temperature. */
 typedef struct {
     const ce_relax *relax;
     double u[CE_CHAINS][CE_MODES];
-    double T, lag, slope, seen, area;
+    double T, lag, slope, bend, w, seen, area;
 } state;
 
 /* (rate of the scan) * tau, K. */
@@ -54,56 +55,71 @@ static double theta(const ce_relax *r, double T, double tf)
     return r->tr_K * r->tr_K / r->h_K * exp(fmin(r->h_K * e, 600.0));
 }
 
-/* One chain of modes over a step; returns its share of the lag. What is gone after a step goes from
- * mode to mode by 1 - E_{k+1} = 1 - E_k^2; the fastest modes follow at once. */
-static double decay(double *u, const double *weight, size_t n, double rate, double dT, double dt)
+/* What remains of (1 - exp(-G))(1 + 2/G) - 2, where that is not all cancellation. */
+static double tilt(double gone, double over)
 {
-    double lag = 0.0, steady = dT / dt / rate, gone = -expm1(-dt * rate);
+    return over < 2e3 ? gone - 2.0 + gone * over : -2.0 / (3.0 * over * over);
+}
+
+/* One chain of modes over a step of the reduced length G for the slowest: its share of the lag. The
+ * relaxation time falls by exp(-2 half) over the step, in a straight line over the reduced time, in
+ * which du/dG = tau dT/dt - u has a closed solution. What is gone after a step goes from mode to mode
+ * by 1 - E_{k+1} = 1 - E_k^2; the fastest modes follow at once. */
+static double decay(double *u, const double *weight, size_t n, double G, double dT, double half)
+{
+    double lag = 0.0, steady = dT / G, gone = -expm1(-G), over = 2.0 / G;
+    const double turn = tanh(half);
     size_t k = 0;
     for (; k < n && gone < 1.0 - 1e-9; k++) {
-        u[k] += (steady - u[k]) * gone;
+        u[k] += (steady - u[k]) * gone + steady * turn * tilt(gone, over);
         lag += weight[k] * u[k];
         steady *= 0.5;
+        over *= 0.5;
         gone *= 2.0 - gone;
     }
     for (; k < n; k++) {
-        u[k] = steady;
-        lag += weight[k] * steady;
+        u[k] = steady * (1.0 - turn * (1.0 - over));
+        lag += weight[k] * u[k];
         steady *= 0.5;
+        over *= 0.5;
     }
     return lag;
 }
 
-/* Advance by dT in the scaled time dt (K of scan); dt > 0. The relaxation time is frozen at its
- * value in the middle of the step, where the fictive temperature is extrapolated to: second order. */
+/* Advance by dT in the scaled time dt (K of scan); dt > 0. Over the step the fictive temperature is
+ * extrapolated and ln tau a straight line over temperature: third order. */
 static void advance(state *s, double dT, double dt)
 {
     const ce_relax *r = s->relax;
-    const double tf = s->T - s->lag;
-    const double th = theta(r, s->T + 0.5 * dT, tf + 0.5 * s->slope * dT);
+    const double w = fabs(dT), tf = s->T - s->lag, T = s->T + 0.5 * dT;
+    const double mean = s->slope + 0.5 * s->bend * (s->w + w);
+    const double mid = tf + 0.5 * dT * (mean - 0.25 * s->bend * w);
+    const double half =
+        0.5 * dT * r->h_K * (r->x / (T * T) + (1.0 - r->x) * mean / (mid * mid));
+    const double G = dt / theta(r, T, mid) * (fabs(half) < 1e-3 ? 1.0 : sinh(half) / half);
     double lag = 0.0;
     for (size_t j = 0; j < r->modes.chains; j++)
-        lag += decay(s->u[j], r->modes.weight[j], r->modes.n, r->modes.slowest[j] / th, dT, dt);
-    if (dT == 0.0)
-        s->slope = 0.0;
-    else if (fabs(dT) > 1e-5)
-        s->slope = 1.0 - (lag - s->lag) / dT; /* else rounding errors */
+        lag += decay(s->u[j], r->modes.weight[j], r->modes.n, r->modes.slowest[j] * G, dT, half);
+    if (dT == 0.0) {
+        s->slope = s->bend = 0.0;
+    } else if (w > 1e-5) { /* else rounding errors */
+        const double slope = 1.0 - (lag - s->lag) / dT;
+        s->bend = (slope - s->slope) / (0.5 * (w + s->w));
+        s->slope = slope;
+        s->w = w;
+    }
     s->T += dT;
     s->lag = lag;
 }
 
-/* First-order lag over a step on which the slope was constant. */
+/* First-order lag over a step on which the slope went in a straight line about its mean. */
 static void observe(state *s, double dT)
 {
-    const double lag = s->relax->lag_K, w = fabs(dT);
-    if (lag <= 0.01 * w) {
-        s->seen = s->slope;
-        s->area += s->slope * dT;
-        return;
-    }
-    const double left = exp(-w / lag), off = s->seen - s->slope;
-    s->area += (s->slope + off * (1.0 - left) * lag / w) * dT;
-    s->seen = s->slope + off * left;
+    const double lag = s->relax->lag_K, w = fabs(dT), rise = 0.5 * w * s->bend;
+    const double left = exp(-w / fmax(lag, 0.01 * w)), behind = lag * s->bend;
+    const double off = s->seen - (s->slope - rise - behind);
+    s->area += (s->slope - behind + off * (1.0 - left) * lag / w) * dT;
+    s->seen = s->slope + rise - behind + off * left;
 }
 
 /* Longest step at a temperature, K. */
