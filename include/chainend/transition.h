@@ -59,13 +59,14 @@ typedef enum {
     CE_FLAG_ROUGH,        /* number = what is left unexplained beyond the noise, step heights   */
     CE_FLAG_NOT_MONOTONE, /* number = steps back of the temperature in the segment            */
     CE_FLAG_NO_OVERLAP,   /* windows given by the user do not enclose a step                    */
+    CE_FLAG_SHOULDER,     /* number = K over which the curve stays near half of its height      */
     CE_FLAGS
 } ce_flag_code;
 typedef struct {
     ce_flag_code code;
     double number;
 } ce_flag;
-#define CE_MAX_FLAGS 16
+#define CE_MAX_FLAGS 20
 CE_API const char *ce_flag_name(ce_flag_code code); /* "overshoot", "small step", ... */
 /* One plain sentence with the number, e.g. "overshoot: 1.4 times the step height; ...". */
 CE_API void ce_flag_text(const ce_flag *flag, char *text, size_t room);

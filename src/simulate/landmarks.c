@@ -91,12 +91,32 @@ static double first_crossing(const curve *c,
     return (double)NAN;
 }
 
-/* Where the curve is steepest: the steepest node, then golden section between its neighbours. */
-static double steepest(const curve *c)
+/* The nodes of the step: from a tenth of its height to its top. What a fast-cooled glass gives off as
+ * soon as it is heated can be steeper, but is none of it. */
+static void step_nodes(const curve *c, double half_K, size_t *from, size_t *to)
 {
-    size_t best = 0;
+    double top = -(double)INFINITY;
+    *from = 3;
+    *to = c->n > 3 ? c->n - 3 : 0;
+    if (!isfinite(half_K)) return;
+    size_t last = *to;
+    for (size_t i = 3; i < last; i++) {
+        double height = half_step_function(c, c->t_K[i], NULL) + 0.5;
+        if (c->t_K[i] < half_K && height < 0.1) *from = i;
+        if (c->t_K[i] > half_K && height > top) {
+            top = height;
+            *to = i + 1;
+        }
+    }
+}
+
+/* Where the step is steepest: the steepest node, then golden section between its neighbours. */
+static double steepest(const curve *c, double half_K)
+{
+    size_t best = 0, from, to;
     double most = -(double)INFINITY;
-    for (size_t i = 3; i + 3 < c->n; i++) {
+    step_nodes(c, half_K, &from, &to);
+    for (size_t i = from; i < to; i++) {
         double d = slope(c, c->t_K[i]);
         if (d > most) {
             most = d;
@@ -118,7 +138,8 @@ static double steepest(const curve *c)
 
 static void read_curve(const curve *c, ce_ramp_truth *truth)
 {
-    double ti = steepest(c), k = slope(c, ti), y = value(c, ti);
+    double half = first_crossing(c, half_step_function, NULL);
+    double ti = steepest(c, half), k = slope(c, ti), y = value(c, ti);
     double bg = c->glass->slope_glass, bl = bg + c->glass->slope_step;
     double at[2];
     at[0] = ti - (y - glass_line(c, ti)) / (k - bg);
@@ -126,7 +147,7 @@ static void read_curve(const curve *c, ce_ramp_truth *truth)
     truth->tg_K[CE_INFLECTION] = ti;
     truth->tg_K[CE_ONSET] = at[0];
     truth->tg_K[CE_END] = at[1];
-    truth->tg_K[CE_HALF_STEP] = first_crossing(c, half_step_function, NULL);
+    truth->tg_K[CE_HALF_STEP] = half;
     truth->tg_K[CE_MIDPOINT] =
         isfinite(at[0] + at[1]) ? first_crossing(c, midpoint_function, at) : (double)NAN;
     truth->step_J_gK = c->glass->share * step_line(c, truth->tg_K[CE_HALF_STEP]);

@@ -85,6 +85,21 @@ static double equal_areas(const ce_trace *t, const ce_lines *l, double to)
     return root < 0.0 || !(d0 > 0.0) ? (double)NAN : T2 - 2.0 * area / (d0 + sqrt(root));
 }
 
+/* Temperatures between the first 0.45 of the height and the last 0.55 before a point of the trace. */
+static double shoulder(const ce_trace *t, const ce_lines *l, size_t low, size_t high)
+{
+    size_t from = low, to = high;
+    while (from < high && height(t, l, from) < 0.45) from++;
+    while (to > from && height(t, l, to) > 0.55) to--;
+    return t->T[to] - t->T[from];
+}
+
+double ce_shoulder_doubt(const ce_points *p)
+{
+    const double share = p->shoulder_K / fmax(p->high_K - p->low_K, 0.1);
+    return fmin(fmax((share - 0.2) / 0.1, 0.0), 1.0) * p->shoulder_K / sqrt(12.0);
+}
+
 bool ce_construct(const ce_trace *t, const ce_lines *l, double area_K, ce_points *p)
 {
     *p = (ce_points){.low_K = (double)NAN, .high_K = (double)NAN};
@@ -106,6 +121,7 @@ bool ce_construct(const ce_trace *t, const ce_lines *l, double area_K, ce_points
         top++;
     p->low_K = t->T[low - 1];
     p->high_K = t->T[high];
+    p->shoulder_K = shoulder(t, l, low, high);
     double most = 0.0;
     for (size_t i = after; i < t->n && t->T[i] <= area_K; i++)
         most = fmax(most, height(t, l, i) - 1.0);

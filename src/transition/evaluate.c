@@ -52,6 +52,9 @@ ce_status ce_read_step(const ce_curve *curve, const ce_place *place, ce_window e
             out->liquid = s.liquid;
             out->bend = ce_windows_sag(&s);
             survey(&s, out);
+            const double doubt = ce_shoulder_doubt(&out->points);
+            out->u_window[CE_HALF_STEP] = hypot(out->u_window[CE_HALF_STEP], doubt);
+            out->shoulder_K = doubt > 0.0 ? out->points.shoulder_K : 0.0;
             out->strength = place->score / fmax(1.0, out->rough / 0.01);
         }
     }

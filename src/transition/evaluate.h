@@ -20,6 +20,7 @@ typedef struct {
     double points_within; /* recorded points between onset and end                           */
     double event_K;       /* distance of the next event from the end; NaN = none             */
     double missing_K;     /* baseline that the run lacks; 0 = none                           */
+    double shoulder_K;    /* near half of the height; 0 = none                               */
     double rough;         /* what the better description leaves over, r.m.s. in steps        */
     double strength;      /* of the evidence: height over all that is left unexplained       */
     bool model;

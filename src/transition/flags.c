@@ -11,6 +11,7 @@ void ce_add_flag(ce_transition *t, ce_flag_code code, double number)
 void ce_flag_finding(const ce_finding *f, ce_transition *t)
 {
     if (t->overshoot > 1.0) ce_add_flag(t, CE_FLAG_OVERSHOOT, t->overshoot);
+    if (f->shoulder_K > 0.0) ce_add_flag(t, CE_FLAG_SHOULDER, f->shoulder_K);
     if (f->points.step < 10.0 * f->noise)
         ce_add_flag(t, CE_FLAG_SMALL_STEP, f->points.step / f->noise);
     const double shorter =

@@ -6,7 +6,7 @@
 static const double roughly = 0.03;   /* of a step, when starts are compared by their gross shape */
 static const size_t most_work = 100;  /* iterations after which no other history is tried       */
 static const double most_prior = 9.0; /* chi-square of the priors: as many as there are         */
-static const double inexact_steps = 1e-3; /* what the model may miss of a step, any cell        */
+static const double inexact_steps = 5e-4; /* what the model may miss of a step, any cell        */
 static const double inexact_start = 0.02; /* and of a start-up, relative                        */
 /* Near the overshoot no model of relaxation is exact: neither the measured glass, whose response is no
  * stretched exponential to the last per cent, nor another integration of the same equations, where
@@ -36,12 +36,12 @@ static void weigh_cells(const ce_windowed *s, ce_cells *cells)
     }
 }
 
-/* Mean share of the noise in what the cells may be off by: the misfit of a perfect model. */
-static double expected_misfit(const ce_cells *cells, double sigma)
+double ce_expected_misfit(const ce_modelled *f)
 {
+    const ce_cells *cells = &f->cells;
     double sum = 0.0;
     for (size_t i = 0; i < cells->n; i++) {
-        const double v = sigma * sigma / cells->w[i];
+        const double v = f->model.sigma * f->model.sigma / cells->w[i];
         sum += v / (v + cells->sd[i] * cells->sd[i]);
     }
     return sum / (double)cells->n;
@@ -93,7 +93,7 @@ static int by_total(const void *a, const void *b)
 /* Neither the curve nor what is known of glasses asks for another history. */
 static bool fits_well(const ce_modelled *f)
 {
-    const double expected = expected_misfit(&f->cells, f->model.sigma);
+    const double expected = ce_expected_misfit(f);
     const double priors = f->model.total - f->model.misfit * (double)f->cells.n;
     const double luck =
         3.0 * sqrt(2.0 / (double)f->cells.n); /* of a mean of squares              */

@@ -61,6 +61,7 @@ static void model_columns(const ce_model *model, modelling *m)
 /* Derivatives of everything by every parameter, by differences. */
 static bool gradients(by_model *f, modelling *m)
 {
+    const bool on_shoulder = ce_shoulder_doubt(&f->p) > 0.0;
     for (size_t a = CE_FREE; a-- > 0;) { /* linear ones first: they leave the columns alone     */
         const double h = ce_model_increment(&f->fit.model, a);
         memset(f->gradient[a], 0, sizeof f->gradient[a]);
@@ -73,20 +74,29 @@ static bool gradients(by_model *f, modelling *m)
         if (!construct_model(&moved, m, &lines, &p)) return false;
         double *g = f->gradient[a];
         for (int k = 0; k < CE_CONSTRUCTIONS; k++) g[k] = (p.at[k] - f->p.at[k]) / h;
-        g[CE_CONSTRUCTIONS] = (p.step - f->p.step) / h;
+        /* on a shoulder the half-step jumps: that is doubted apart */
+        if (on_shoulder) g[CE_HALF_STEP] = g[CE_MIDPOINT];
+        const double T = f->p.at[CE_HALF_STEP];
+        g[CE_CONSTRUCTIONS] =
+            (ce_line_at(&lines.liquid, T) - ce_line_at(&lines.glass, T) - f->p.step) / h;
         g[CE_CONSTRUCTIONS + 1] = g[CE_END] - g[CE_ONSET];
     }
     model_columns(&f->fit.model, m);
     return true;
 }
 
+/* Of the variance that an inexact model is allowed, what is believed where the curve shows nothing of
+ * it: histories that the priors of the model chose leave no trace. From the tuning half as well. */
+static const double unseen = 0.1;
+
 static double variance(const by_model *f, size_t quantity)
 {
+    const double least = unseen + (1.0 - unseen) * ce_expected_misfit(&f->fit);
     double v = 0.0;
     for (size_t a = 0; a < CE_FREE; a++)
         for (size_t b = 0; b < CE_FREE; b++)
             v += f->gradient[a][quantity] * f->fit.model.cov[a][b] * f->gradient[b][quantity];
-    return fmax(v, 0.0) * fmax(f->fit.model.misfit, 1.0);
+    return fmax(v, 0.0) * fmax(f->fit.model.misfit, least);
 }
 
 /* Add the squared effect of reweighting the cells to sum. */
@@ -123,9 +133,12 @@ static ce_status window_part(const by_model *f, double sum[CE_CONSTRUCTIONS + 2]
 /* What histories that fit equally well leave open, K for a step 10 K wide, growing with a power of the
  * width; from the tuning half of tests/bench/transition_accuracy. */
 static const double model_part[CE_CONSTRUCTIONS] = {
-    [CE_ONSET] = 0.014,      [CE_MIDPOINT] = 0.011, [CE_HALF_STEP] = 0.012,
-    [CE_INFLECTION] = 0.012, [CE_END] = 0.005,      [CE_FICTIVE] = 0.08};
+    [CE_ONSET] = 0.014,      [CE_MIDPOINT] = 0.012, [CE_HALF_STEP] = 0.012,
+    [CE_INFLECTION] = 0.010, [CE_END] = 0.002,      [CE_FICTIVE] = 0.08};
 static const double power = 4.0;
+/* The steepest place is where the slope hardly changes: what the cells of the fit leave of it and of the
+ * onset by its tangent, in widths of the step; as above. */
+static const double steepest_part = 0.003;
 
 /* A step that changes with temperature counts at the fictive temperature (Moynihan et al. 1976), but
  * often is taken at the temperature of the sample: either reading is half of the doubt, so that the
@@ -153,6 +166,9 @@ static ce_status model_uncertainty(const ce_windowed *s, by_model *f, modelling 
         /* the stretches differ by their noise too: that is counted already */
         out->u_window[k] = hypot(sqrt(fmax(sum[k] - noise, 0.0)), model_part[k] * broad);
     }
+    const double steepest = steepest_part * s->width;
+    out->u_window[CE_INFLECTION] = hypot(out->u_window[CE_INFLECTION], steepest);
+    out->u_window[CE_ONSET] = hypot(out->u_window[CE_ONSET], steepest);
     out->u_window[CE_FICTIVE] =
         hypot(out->u_window[CE_FICTIVE], hypot(ce_area_part_K, reading_of_step(f, m)));
     out->step_u = sqrt(variance(f, CE_CONSTRUCTIONS) + sum[CE_CONSTRUCTIONS]);

@@ -17,6 +17,8 @@ typedef struct {
  * *f, also when this fails. CE_OK | CE_E_NOFIT | CE_E_NOMEM. */
 ce_status ce_fit_histories(const ce_windowed *s, ce_window range, ce_modelled *f);
 void ce_modelled_free(ce_modelled *f);
+/* Mean share of the noise in what the cells may be off by: the misfit of a perfect model. */
+double ce_expected_misfit(const ce_modelled *f);
 
 /* The model's lines and constructions with their uncertainty, where it follows the curve; CE_E_NOFIT
  * where it does not: then the doubt that this casts on windows is left in out->u_window. */

@@ -27,6 +27,8 @@ static const struct {
     [CE_FLAG_OVERSHOOT] =
         {"overshoot", "enthalpy recovery overshoots by %.2g step heights: onset and half-step say "
                       "little about the glass, prefer fictive"},
+    [CE_FLAG_SHOULDER] = {"shoulder", "the curve stays near half of its height over %.2g K: the "
+                                      "half-step may lie anywhere there, prefer midpoint"},
     [CE_FLAG_SMALL_STEP] = {"small step", "the step is only %.2g times the noise"},
     [CE_FLAG_SHORT_WINDOW] = {"short window", "a baseline rests on %.2g K of curve only"},
     [CE_FLAG_CURVED_BASELINE] = {"curved baseline",

@@ -94,8 +94,7 @@ static void advance(state *s, double dT, double dt)
     const double w = fabs(dT), tf = s->T - s->lag, T = s->T + 0.5 * dT;
     const double mean = s->slope + 0.5 * s->bend * (s->w + w);
     const double mid = tf + 0.5 * dT * (mean - 0.25 * s->bend * w);
-    const double half =
-        0.5 * dT * r->h_K * (r->x / (T * T) + (1.0 - r->x) * mean / (mid * mid));
+    const double half = 0.5 * dT * r->h_K * (r->x / (T * T) + (1.0 - r->x) * mean / (mid * mid));
     const double G = dt / theta(r, T, mid) * (fabs(half) < 1e-3 ? 1.0 : sinh(half) / half);
     double lag = 0.0;
     for (size_t j = 0; j < r->modes.chains; j++)

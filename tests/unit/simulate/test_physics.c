@@ -160,6 +160,26 @@ static void step_height_in_power(void **state)
     ce_simulation_free(sim);
 }
 
+/* A broad glass cooled eight times faster than it is heated relaxes as soon as the heating begins, and
+ * what it gives off is steeper there than the step: the inflection is that of the step all the same. */
+static void inflection_lies_in_the_step(void **state)
+{
+    (void)state;
+    ce_simulation_config c = flat("pvc");
+    c.glass[0].h_K = 235000.0;
+    c.glass[0].x = 0.09;
+    c.glass[0].beta = 0.23;
+    ce_glass_move(&c.glass[0], ce_glass_temperature(&c.glass[0], 100.0), 400.0);
+    c.instrument.lag_s = 2.7;
+    const ce_programme_step heat = {.to_K = 450.0, .rate_K_min = 5.0};
+    c.programme = (ce_programme){.start_K = 340.0, .n = 1, .step = &heat, .prior_rate_K_min = 40.0};
+    const ce_ramp_truth t = last_ramp(&c);
+    assert_true(t.tg_K[CE_INFLECTION] > t.tg_K[CE_HALF_STEP] - 5.0);
+    assert_true(t.tg_K[CE_INFLECTION] < t.tg_K[CE_HALF_STEP] + 10.0);
+    assert_true(t.tg_K[CE_ONSET] < t.tg_K[CE_INFLECTION]);
+    assert_true(t.tg_K[CE_INFLECTION] < t.tg_K[CE_END]);
+}
+
 static void temperature_offset_moves_the_truth_as_recorded(void **state)
 {
     (void)state;
@@ -215,6 +235,7 @@ int main(void)
         cmocka_unit_test(two_step_ageing_crosses_over),
         cmocka_unit_test(lag_moves_equal_areas_by_q_tau),
         cmocka_unit_test(step_height_in_power),
+        cmocka_unit_test(inflection_lies_in_the_step),
         cmocka_unit_test(temperature_offset_moves_the_truth_as_recorded),
         cmocka_unit_test(published_sum_converges_to_the_sum_of_exponentials),
     };

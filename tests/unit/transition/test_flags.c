@@ -174,6 +174,33 @@ static void neighbours_and_ends(void **state)
     expect_flag(&t, CE_FLAG_CUT_OFF, 0.2, 10.0);
 }
 
+/* A broad glass annealed far below: the half line is met on a shoulder, or two kelvins on, and the
+ * uncertainty of the half-step says so; that of the midpoint need not. */
+static void a_shoulder_near_half_the_height(void **state)
+{
+    (void)state;
+    ce_simulation_config c = clean("pvc");
+    c.glass[0].h_K = 250000.0;
+    c.glass[0].x = 0.0818;
+    c.glass[0].beta = 0.237;
+    c.glass[0].ln_a = -858.97;
+    c.glass[0].ref_K = 289.487;
+    const ce_programme_step warm = {.to_K = 343.0, .rate_K_min = 10.0};
+    c.programme.step = &warm;
+    c.programme.start_K = 212.0;
+    c.programme.prior_age_K = 274.5;
+    c.programme.prior_age_s = 6902.0;
+    c.instrument.interval_s = 3.0;
+    c.instrument.noise_mW = 0.0;
+    ce_transition t = read_step(&c, NULL);
+    expect_flag(&t, CE_FLAG_SHOULDER, 2.0, 6.0);
+    assert_true(t.tg[CE_HALF_STEP].u_K > 0.4);
+    assert_true(t.tg[CE_MIDPOINT].u_K < 0.4);
+    c = clean("pvc");
+    t = read_step(&c, NULL);
+    assert_null(flag_of(&t, CE_FLAG_SHOULDER));
+}
+
 static void widths(void **state)
 {
     (void)state;
@@ -361,6 +388,7 @@ int main(void)
         cmocka_unit_test(ageing_and_noise),
         cmocka_unit_test(baselines),
         cmocka_unit_test(neighbours_and_ends),
+        cmocka_unit_test(a_shoulder_near_half_the_height),
         cmocka_unit_test(widths),
         cmocka_unit_test(heatings),
         cmocka_unit_test(sign_and_windows),

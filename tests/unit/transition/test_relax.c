@@ -118,12 +118,43 @@ static void the_cooling_rate_moves_it_by_the_activation_enthalpy(void **state)
     }
 }
 
+/* Steps of 0.4 K draw the curve that steps of 0.02 K draw, to some thousandths of the step (0.01 K where it
+ * is steepest), and cells with gaps between them that of cells without: the model is fitted on the ones
+ * and read on the others. */
+static void coarse_steps_draw_the_fine_curve(void **state)
+{
+    (void)state;
+    ce_relax r = polystyrene(reference(10.0));
+    for (int lagging = 0; lagging < 2; lagging++) {
+        r.lag_K = lagging ? 0.2 : 0.0;
+        r.fine_K = 0.02;
+        lay_out(340.0, 0.1);
+        ce_relax_scan(&r, false, 600, low, high, tf, step);
+        double fine[600], fine_tf[600];
+        memcpy(fine, step, sizeof fine);
+        memcpy(fine_tf, tf, sizeof fine_tf);
+        r.fine_K = 0.4;
+        for (int i = 0; i < 120; i++) {
+            low[i] = low[5 * i];
+            high[i] = low[i] + 0.1;
+        }
+        ce_relax_scan(&r, false, 120, low, high, tf, step);
+        double off = 0.0;
+        for (int i = 0; i < 120; i++) {
+            off = fmax(off, fabs(step[i] - fine[5 * i]));
+            assert_close(tf[i], fine_tf[5 * i], 0.002);
+        }
+        assert_true(off < (lagging ? 0.007 : 0.004));
+    }
+}
+
 int main(void)
 {
     const struct CMUnitTest tests[] = {
         cmocka_unit_test(the_modes_make_the_stretched_exponential),
         cmocka_unit_test(areas_on_heating_give_the_fictive_temperature),
         cmocka_unit_test(polystyrene_as_computed_elsewhere),
+        cmocka_unit_test(coarse_steps_draw_the_fine_curve),
         cmocka_unit_test(the_cooling_rate_moves_it_by_the_activation_enthalpy),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);
