@@ -97,7 +97,45 @@ static double shoulder(const ce_trace *t, const ce_lines *l, size_t low, size_t 
 double ce_shoulder_doubt(const ce_points *p)
 {
     const double share = p->shoulder_K / fmax(p->high_K - p->low_K, 0.1);
-    return fmin(fmax((share - 0.2) / 0.1, 0.0), 1.0) * p->shoulder_K / sqrt(12.0);
+    return fmin(fmax((share - 0.16) / 0.06, 0.0), 1.0) * p->shoulder_K / sqrt(12.0);
+}
+
+double ce_tangent_doubt(const ce_points *p, ce_construction construction)
+{
+    return fabs(p->apart[construction]) / sqrt(12.0);
+}
+
+static void meet_lines(const ce_line *tangent, const ce_lines *l, double at[CE_CONSTRUCTIONS])
+{
+    at[CE_INFLECTION] = tangent->ref_K;
+    at[CE_ONSET] = meets(tangent, &l->glass);
+    at[CE_END] = meets(tangent, &l->liquid);
+}
+
+/* The steepest place off the steepest by a quarter of the rise or more, when it is a peak of the slope of
+ * its own and nine tenths as steep. */
+static void other_tangent(const ce_trace *t, const ce_lines *l, size_t low, size_t top,
+                          ce_points *p)
+{
+    const double off = 0.25 * (p->high_K - p->low_K);
+    double most = 0.9 * (p->tangent.slope - l->glass.slope) + l->glass.slope;
+    size_t best = 0;
+    for (size_t i = low > 3 ? low : 3; i < top && i + 3 < t->n; i++) {
+        const double slope = slope_at(t, i);
+        if (fabs(t->T[i] - p->tangent.ref_K) < off || slope < most) continue;
+        if (slope < slope_at(t, i - 1) || slope < slope_at(t, i + 1)) continue;
+        most = slope;
+        best = i;
+    }
+    if (best == 0) return;
+    const ce_line tangent = {t->T[best], t->y[best], most};
+    double at[CE_CONSTRUCTIONS] = {0};
+    meet_lines(&tangent, l, at);
+    static const ce_construction by_tangent[] = {CE_INFLECTION, CE_ONSET, CE_END};
+    for (size_t k = 0; k < 3; k++) {
+        const double apart = at[by_tangent[k]] - p->at[by_tangent[k]];
+        p->apart[by_tangent[k]] = isfinite(apart) ? apart : 0.0;
+    }
 }
 
 bool ce_construct(const ce_trace *t, const ce_lines *l, double area_K, ce_points *p)
@@ -128,9 +166,8 @@ bool ce_construct(const ce_trace *t, const ce_lines *l, double area_K, ce_points
     p->overshoot = most;
     p->at[CE_FICTIVE] = equal_areas(t, l, area_K);
     if (!steepest(t, low, top, &p->tangent)) return true;
-    p->at[CE_INFLECTION] = p->tangent.ref_K;
-    p->at[CE_ONSET] = meets(&p->tangent, &l->glass);
-    p->at[CE_END] = meets(&p->tangent, &l->liquid);
+    meet_lines(&p->tangent, l, p->at);
+    other_tangent(t, l, low, top, p);
     const double on = p->at[CE_ONSET], end = p->at[CE_END];
     if (isfinite(on) && isfinite(end))
         p->at[CE_MIDPOINT] = level_crossing(

@@ -18,12 +18,16 @@ typedef struct {
     double overshoot;     /* height above the liquid line over the step                  */
     double low_K, high_K; /* where the trace has risen by 0.1 and by 0.9                 */
     double shoulder_K;    /* over which it stays within 0.05 of half the height          */
+    double apart[CE_CONSTRUCTIONS]; /* onset, inflection and end by the tangent at another place
+                                     * that is nearly as steep, minus those above; 0 = none       */
 } ce_points;
 
 /* Standard uncertainty of the half-step on a shoulder near half of its height, where the curve meets the
  * half line anywhere if the lines are off by a few hundredths of the step (uniform distribution), K; 0
  * without one: a step takes a tenth to a seventh of its rise there. */
 double ce_shoulder_doubt(const ce_points *points);
+/* The same of onset, inflection and end where a shoulder makes two places nearly as steep, K. */
+double ce_tangent_doubt(const ce_points *points, ce_construction construction);
 
 /* False when the trace does not cross between the lines. area_K: the equal-area temperature is
  * sought with the integral taken from the first point of the trace to this temperature. */

@@ -26,6 +26,15 @@ static void survey(const ce_windowed *s, ce_finding *out)
     out->event_K = out->range.high_K < last - 4.0 ? out->range.high_K - end : (double)NAN;
 }
 
+static void doubt_shoulder(ce_finding *out)
+{
+    const double doubt = ce_shoulder_doubt(&out->points);
+    out->u_window[CE_HALF_STEP] = hypot(out->u_window[CE_HALF_STEP], doubt);
+    out->shoulder_K = doubt > 0.0 ? out->points.shoulder_K : 0.0;
+    for (ce_construction k = CE_ONSET; k < CE_CONSTRUCTIONS; k++)
+        out->u_window[k] = hypot(out->u_window[k], ce_tangent_doubt(&out->points, k));
+}
+
 ce_status ce_read_step(const ce_curve *curve, const ce_place *place, ce_window edge,
                        const ce_transition_options *o, ce_finding *out, ce_error *err)
 {
@@ -52,9 +61,7 @@ ce_status ce_read_step(const ce_curve *curve, const ce_place *place, ce_window e
             out->liquid = s.liquid;
             out->bend = ce_windows_sag(&s);
             survey(&s, out);
-            const double doubt = ce_shoulder_doubt(&out->points);
-            out->u_window[CE_HALF_STEP] = hypot(out->u_window[CE_HALF_STEP], doubt);
-            out->shoulder_K = doubt > 0.0 ? out->points.shoulder_K : 0.0;
+            doubt_shoulder(out);
             out->strength = place->score / fmax(1.0, out->rough / 0.01);
         }
     }
