@@ -184,7 +184,7 @@ double ce_figure_run(const ce_evaluation *e, ce_construction take, FILE *to)
     put_curve(to, e->run, s, t);
     double lo = t->glass.low_K, hi = t->liquid.high_K;
     double end = t->tg[CE_END].value_K, onset = t->tg[CE_ONSET].value_K,
-           reach = 0.25 * (end - onset);
+           reach = 0.1 * (end - onset);
     put_line(to, "glassy", &t->glass_line, lo, hi);
     put_line(to, "liquid", &t->liquid_line, lo, hi);
     if (isfinite(reach)) put_line(to, "tangent", &t->tangent, onset - reach, end + reach);
