@@ -62,6 +62,7 @@ ce_status ce_read_step(const ce_curve *curve, const ce_place *place, ce_window e
             out->bend = ce_windows_sag(&s);
             survey(&s, out);
             doubt_shoulder(out);
+            out->part = place->part;
             out->strength = place->score / fmax(1.0, out->rough / 0.01);
         }
     }

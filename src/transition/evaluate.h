@@ -22,8 +22,10 @@ typedef struct {
     double missing_K;     /* baseline that the run lacks; 0 = none                           */
     double shoulder_K;    /* near half of the height; 0 = none                               */
     double rough;         /* what the better description leaves over, r.m.s. in steps        */
+    double unlike;        /* what the model of one glass leaves over where it was not taken     */
     double strength;      /* of the evidence: height over all that is left unexplained       */
     bool model;
+    bool part; /* of a wider place that is made up of two                                       */
 } ce_finding;
 
 /* Windows NaN = choose; edge: no data beyond (neighbouring transitions). CE_OK | CE_E_REFUSED |

@@ -107,10 +107,12 @@ static int stronger(const void *a, const void *b)
     return (x->strength < y->strength) - (x->strength > y->strength);
 }
 
-/* A further transition must be as clean as a first one: peaks and bends look like small steps. */
+/* A further transition must be as clean as a first one: peaks and bends look like small steps, unless
+ * two make up the height of a wide one, or the step is that of a glass to a hundredth. */
 static bool another(const ce_finding *f, const ce_finding *strongest)
 {
-    return f->strength > 6.0 && f->rough < 0.03 &&
+    const bool glass = f->part || (f->model && f->rough < 0.01);
+    return f->strength > (glass ? 2.0 : 6.0) && f->rough < 0.03 &&
            f->points.step > least_share * strongest->points.step &&
            fabs(f->points.at[CE_HALF_STEP] - strongest->points.at[CE_HALF_STEP]) > 8.0;
 }

@@ -17,7 +17,8 @@ void ce_flag_finding(const ce_finding *f, ce_transition *t)
     const double shorter =
         fmin(t->glass.high_K - t->glass.low_K, t->liquid.high_K - t->liquid.low_K);
     if (shorter < 8.0) ce_add_flag(t, CE_FLAG_SHORT_WINDOW, shorter);
-    if (f->rough > 0.03) ce_add_flag(t, CE_FLAG_ROUGH, f->rough);
+    const double rough = fmax(f->rough, f->unlike);
+    if (rough > 0.015) ce_add_flag(t, CE_FLAG_ROUGH, rough);
     if (f->bend > 0.012) ce_add_flag(t, CE_FLAG_CURVED_BASELINE, f->bend);
     if (f->hook > 0.02) ce_add_flag(t, CE_FLAG_TRANSIENT, f->hook);
     if (f->event_K < 25.0) ce_add_flag(t, CE_FLAG_PEAK_ADJACENT, f->event_K);

@@ -80,8 +80,8 @@ static ce_status try_model(ce_modelled *f, double step, ce_model next, ce_status
     {                                                                                              \
         unit, x, 0.5, 5.5, 20.0                                                                    \
     }
-static const ce_history histories[] = {OF_GLASS(-0.55, -1.6), OF_GLASS(0.0, -1.2),
-                                       OF_GLASS(0.55, -0.85)};
+static const ce_past histories[] = {OF_GLASS(-0.55, -1.6), OF_GLASS(0.0, -1.2),
+                                    OF_GLASS(0.55, -0.85)};
 enum { HISTORIES = sizeof histories / sizeof *histories };
 
 static int by_total(const void *a, const void *b)

@@ -13,6 +13,9 @@
 static const double gaps_K[] = {4.0, 7.0, 12.0, 20.0, 30.0, 45.0};
 enum { GAPS = sizeof gaps_K / sizeof *gaps_K };
 
+/* Evidence that each part of a place needs to be taken for a step of its own. */
+static const double split_score = 4.5;
+
 /* Means over cells of half a kelvin (or the spacing) with running sums: a line costs O(1). */
 typedef struct {
     size_t n;
@@ -129,6 +132,25 @@ static int by_score(const void *a, const void *b)
     return (x->score < y->score) - (x->score > y->score);
 }
 
+/* A wide place may hold two steps with a level stretch between them (a blend): two places half as wide
+ * or less that are clear of each other and make up its height. best is sorted by score. */
+static bool split(const ce_place *best, size_t n, const ce_place *wide, ce_place part[2])
+{
+    const double gap = wide->high_K - wide->low_K, slack = 0.25 * gap;
+    if (gap < 20.0) return false;
+    size_t k = 0;
+    for (size_t i = 0; i < n && k < 2 && best[i].score > split_score; i++) {
+        const ce_place *p = &best[i];
+        if (p->low_K < wide->low_K - slack || p->high_K > wide->high_K + slack) continue;
+        if (p->high_K - p->low_K > 0.5 * gap || p->step < 0.15 * wide->step) continue;
+        if (k == 1 && p->low_K < part[0].high_K + 6.0 && p->high_K > part[0].low_K - 6.0) continue;
+        part[k] = *p;
+        part[k++].part = true;
+    }
+    const double sum = k == 2 ? part[0].step + part[1].step : 0.0;
+    return sum > 0.75 * wide->step && sum < 1.25 * wide->step;
+}
+
 ce_status ce_locate(const ce_curve *curve, double plausible, ce_place *place, size_t room,
                     size_t *found, double *detectable)
 {
@@ -156,6 +178,13 @@ ce_status ce_locate(const ce_curve *curve, double plausible, ce_place *place, si
                               best[i].high_K < place[k].low_K - 6.0);
         if (apart) place[(*found)++] = best[i];
     }
+    for (size_t k = *found; k-- > 0;) {
+        ce_place part[2];
+        if (*found == room || !split(best, g.n, &place[k], part)) continue;
+        place[k] = part[0];
+        place[(*found)++] = part[1];
+    }
+    qsort(place, *found, sizeof *place, by_score);
     free(best);
     free(g.all);
     return CE_OK;

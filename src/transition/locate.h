@@ -9,6 +9,7 @@
  * unexplained. */
 typedef struct {
     double low_K, high_K, step, score;
+    bool part; /* of a wider place that is made up of two                                       */
 } ce_place;
 
 #define CE_LEAST_SCORE 3.0

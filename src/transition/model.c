@@ -369,7 +369,7 @@ static int solve(problem *p, gsl_vector *shape, ce_design *design)
     return status;
 }
 
-void ce_model_history(ce_model *m, const ce_history *h)
+void ce_model_history(ce_model *m, const ce_past *h)
 {
     m->shape[S_UNIT] = h->unit;
     m->shape[S_X] = h->x;

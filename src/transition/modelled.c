@@ -248,6 +248,7 @@ ce_status ce_take_model(const ce_windowed *s, const ce_transition_options *o, ce
     if (st == CE_OK) {
         const double rough = roughness(s, &f);
         if (!follows(s, &f, rough)) {
+            out->unlike = rough;
             for (int k = 0; k < CE_CONSTRUCTIONS; k++) {
                 const double off = fabs(f.p.at[k] - s->p.at[k]);
                 out->u_window[k] = isfinite(off) ? 0.3 * fmin(off, 2.0 * s->width) : 0.0;

@@ -51,8 +51,8 @@ static const struct {
     [CE_FLAG_STEP_IMPLAUSIBLE] =
         {"implausible step", "a step of %.3g J/(g K) is not that of an amorphous polymer: mass, "
                              "unit or sign?"},
-    [CE_FLAG_ROUGH] = {"rough", "lines and step leave %.2g step heights of the curve unexplained, "
-                                "beyond its noise"},
+    [CE_FLAG_ROUGH] = {"rough", "the step of one glass between two lines leaves %.2g step heights "
+                                "unexplained, beyond the noise: blend, shoulder or another event?"},
     [CE_FLAG_NOT_MONOTONE] = {"not monotone", "the temperature steps back %.0f times within the "
                                               "segment: reading or control of it is disturbed"},
     [CE_FLAG_NO_OVERLAP] = {"no overlap", "the given windows do not enclose the step at %.1f K"},

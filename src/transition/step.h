@@ -89,8 +89,8 @@ ce_model ce_model_start(bool cooling, double centre_K, double width_K, double si
  * its ratio to the scan), annealed (ln of time times rate of the scan in K; 0 = not) so far below. */
 typedef struct {
     double unit, x, cooling, age, age_below_K;
-} ce_history;
-void ce_model_history(ce_model *model, const ce_history *history);
+} ce_past;
+void ce_model_history(ce_model *model, const ce_past *history);
 /* How well a start does without any iteration, in model->total; its Tr is moved so that the half-step
  * lies at the model's origin. CE_OK | CE_E_NOMEM. */
 ce_status ce_model_try(const ce_cells *cells, double step, ce_model *model);

@@ -201,6 +201,42 @@ static void a_shoulder_near_half_the_height(void **state)
     assert_null(flag_of(&t, CE_FLAG_SHOULDER));
 }
 
+/* Two glasses of a blend, from overlapping to clear of each other: both are reported, each within the
+ * fourfold uncertainty of the half-step that it has alone. */
+static void both_glasses_of_a_blend(void **state)
+{
+    (void)state;
+    static const double apart_K[] = {25.0, 30.0, 40.0, 60.0};
+    for (size_t k = 0; k < sizeof apart_K / sizeof *apart_K; k++) {
+        ce_simulation_config c = clean("ps");
+        c.n_glasses = 2;
+        c.glass[1] = c.glass[0];
+        c.glass[0].share = 0.6;
+        c.glass[1].share = 0.4;
+        ce_glass_move(&c.glass[1], TG, TG + apart_K[k]);
+        const ce_programme_step far = {.to_K = TG + 110.0, .rate_K_min = 10.0};
+        c.programme.step = &far;
+        c.programme.start_K = TG - 80.0;
+        ce_simulation *s = simulate(&c);
+        ce_run *run = run_of(s, NULL);
+        ce_transitions found;
+        ce_error err = CE_ERROR_INIT;
+        assert_int_equal(ce_transition_find(run, NULL, &found, &err), CE_OK);
+        assert_int_equal(found.n, 2);
+        size_t n;
+        const ce_ramp_truth *truth = ce_simulation_truth(s, &n);
+        assert_int_equal(n, 2);
+        for (size_t i = 0; i < 2; i++) {
+            const ce_reading *r = &found.item[i].tg[CE_HALF_STEP];
+            assert_close(r->value_K, truth[i].tg_K[CE_HALF_STEP], 4.0 * r->u_K);
+            assert_true(r->u_K < 1.5);
+        }
+        ce_transitions_free(&found);
+        ce_run_free(run);
+        ce_simulation_free(s);
+    }
+}
+
 static void widths(void **state)
 {
     (void)state;
@@ -389,6 +425,7 @@ int main(void)
         cmocka_unit_test(baselines),
         cmocka_unit_test(neighbours_and_ends),
         cmocka_unit_test(a_shoulder_near_half_the_height),
+        cmocka_unit_test(both_glasses_of_a_blend),
         cmocka_unit_test(widths),
         cmocka_unit_test(heatings),
         cmocka_unit_test(sign_and_windows),
